@@ -1,0 +1,1 @@
+"""From files to readings, with an account of every row."""

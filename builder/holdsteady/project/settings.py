@@ -1,0 +1,150 @@
+"""The settings of a project as typed, frozen values; what each key means stands beside it."""
+
+from __future__ import annotations
+
+import datetime as dt
+from typing import Annotated, Any, Literal
+
+from pydantic import BaseModel, ConfigDict, Field
+
+from holdsteady.project.durations import Duration
+
+ChartName = Literal[
+    "individuals", "mean-range", "mean-sd", "median-range", "p", "np", "c", "u",
+]
+RuleName = Literal[
+    "outside-limits", "two-of-three", "four-of-five", "run-one-side",
+    "trend", "alternating", "hugging", "avoiding-centre",
+]
+EstimatorName = Literal[
+    "mean-range", "mean-s", "pooled", "weighted", "mean-moving-range", "median-moving-range",
+]
+Moment = dt.datetime | dt.date
+Identifier = Annotated[str, Field(pattern=r"^[A-Za-z0-9_-]+$")]
+
+
+class Model(BaseModel):
+    """Unknown keys are refused, values are frozen."""
+
+    model_config = ConfigDict(extra="forbid", frozen=True, populate_by_name=True)
+
+
+class Site(Model):
+    """`[site]`: what the whole publication shares."""
+
+    title: str = "holdsteady"
+    output: str = "site"
+    timezone: str = "UTC"
+    watch_from: Moment | None = None
+    attention: Duration = Duration("14d")
+    as_of: Moment | None = None
+    points: Literal["all", "recent"] = "all"
+    language: Literal["en"] = "en"
+    footer: str | None = None
+    show_people: bool = False
+
+
+class Source(Model):
+    """`[[source]]`: a set of files read the same way; what is None is detected per file."""
+
+    id: Identifier
+    files: tuple[str, ...] = Field(min_length=1)
+    time: str | None = None
+    delimiter: str | None = None
+    decimal: Literal[".", ","] | None = None
+    encoding: Literal["utf-8"] | None = None
+    time_format: str | None = None
+    missing: tuple[str, ...] = ()
+
+
+class Baseline(Model):
+    """Which points the limits are estimated from: the era's first `points`, or those timed in [from, to)."""
+
+    points: int = Field(default=25, ge=8)
+    from_: Moment | None = Field(default=None, alias="from")
+    to: Moment | None = None
+
+
+class Specification(Model):
+    """What is wanted of single pieces, from a day on."""
+
+    lower: float | None = None
+    target: float | None = None
+    upper: float | None = None
+    from_: Moment | None = Field(default=None, alias="from")
+
+
+class GivenLimits(Model):
+    """Centre and sigma of a single reading, set by the user instead of estimated."""
+
+    centre: float
+    sigma: float | None = Field(default=None, gt=0)
+    from_: Moment | None = Field(default=None, alias="from")
+
+
+class RuleSetting(Model):
+    """One rule with its own counts: `points` needed, out of the last `of` for the zone rules."""
+
+    rule: RuleName
+    points: int | None = Field(default=None, ge=1)
+    of: int | None = Field(default=None, ge=1)
+
+
+class Subgroup(Model):
+    """How readings are gathered: equal values of a column, a count of rows, or a span of clock time."""
+
+    column: str | None = None
+    size: int | None = Field(default=None, ge=2)
+    every: Duration | None = None
+
+
+class Plausible(Model):
+    """Values outside these bounds are set aside."""
+
+    lower: float | None = None
+    upper: float | None = None
+
+
+class Characteristic(Model):
+    """`[[characteristic]]`: one measured property, and how it is watched."""
+
+    id: Identifier
+    title: str = ""
+    area: str = ""
+    source: str
+    value: str | None = None
+    values: tuple[str, ...] | None = None
+    count: str | None = None
+    size: str | float | None = None
+    where: dict[str, str | int | float | bool] = Field(default_factory=dict)
+    each: tuple[str, ...] = ()
+    subgroup: Subgroup | None = None
+    chart: ChartName | None = None  # filled by the loader; see `kind`
+    chart_options: dict[str, Any] = Field(default_factory=dict)
+    unit: str = ""
+    decimals: int | None = Field(default=None, ge=0, le=12)
+    specification: tuple[Specification, ...] = ()  # sorted by `from`; the first may have none
+    plausible: Plausible | None = None
+    baseline: Baseline = Baseline()
+    limits: tuple[GivenLimits, ...] = ()  # sorted by `from`
+    limits_by: Literal["sigma"] = "sigma"
+    width: float = Field(default=3.0, gt=0)
+    estimator: EstimatorName | None = None
+    censored: Literal["set-aside"] = "set-aside"
+    rules: tuple[RuleSetting, ...] | None = None  # None: the chart's default
+    cadence: Duration | None = None
+    calendar: str | None = None
+    gap: Duration | None = None
+    gauge: str = ""
+    class_: str = Field(default="", alias="class")
+    reaction: str = ""
+    owner: str = ""
+    better: Literal["higher", "lower"] | None = None
+
+
+class Settings(Model):
+    """A whole `holdsteady.toml`, defaults already laid under every characteristic."""
+
+    site: Site = Site()
+    source: tuple[Source, ...] = ()
+    characteristic: tuple[Characteristic, ...] = ()

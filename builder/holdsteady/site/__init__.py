@@ -1,0 +1,1 @@
+"""From all findings to the files of a site; formats and arranges, computes no statistics."""
