@@ -6,6 +6,7 @@ import datetime as dt
 from zoneinfo import ZoneInfo
 
 import numpy as np
+import numpy.typing as npt
 
 from holdsteady.arrays import Ints
 
@@ -52,9 +53,9 @@ def wall(microseconds: Ints, zone: ZoneInfo) -> Ints:
 def iso(microseconds: Ints, zone: ZoneInfo) -> list[str]:
     """Return ISO 8601 texts with offset; with a fraction only where one of the moments has one."""
     shift = offsets(microseconds, zone)
-    local = (microseconds + shift).astype("datetime64[us]")
-    unit = "s" if not np.any(microseconds % SECOND) else "us"
-    texts = np.datetime_as_string(local, unit=unit).tolist()
+    local: npt.NDArray[np.datetime64] = (microseconds + shift).astype("datetime64[us]")
+    whole = not np.any(microseconds % SECOND)
+    texts = np.datetime_as_string(local, unit="s" if whole else "us").tolist()
     suffix = {int(s): _suffix(int(s)) for s in np.unique(shift)}
     return [text + suffix[s] for text, s in zip(texts, shift.tolist(), strict=True)]
 

@@ -1,1 +1,4 @@
-"""From readings to points, limits in force, signals, cases and a state: one characteristic in, one finding out."""
+"""From readings to points, limits in force, signals, cases and a state.
+
+One characteristic in, one finding out.
+"""
