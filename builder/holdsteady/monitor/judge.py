@@ -21,6 +21,7 @@ _FEWEST_EXPECTED = 5.0
 _MOST_UNEQUAL = 2.0
 _DIRECTIONS: Mapping[int, Direction] = {1: "high", -1: "low", 0: "none"}
 _SHAPE_RULES = ("trend", "alternating")
+_ZONE_RULES = ("two-of-three", "four-of-five", "hugging", "avoiding-centre")
 _USUAL = ("outside-limits", "run-one-side")
 
 
@@ -114,8 +115,8 @@ def _rules_of(
     if panel == "location":
         return tuple(asked), {}
     if kind.attribute:
-        allowed = [r for r in asked if r.name in ("outside-limits", "run-one-side")]
-        reason = "zones and shapes suppose a symmetric statistic; counts are skewed"
+        allowed = [r for r in asked if r.name not in _ZONE_RULES]
+        reason = "zones suppose a symmetric statistic; counts are skewed"
     else:
         allowed = [r for r in asked if r.name == "outside-limits"]
         reason = "run rules suppose independent values; spread panels know the limits alone"

@@ -3,30 +3,79 @@
 from __future__ import annotations
 
 import datetime as dt
+import math
 from typing import Annotated, Any, Literal
 
-from pydantic import BaseModel, ConfigDict, Field
+from pydantic import BaseModel, BeforeValidator, ConfigDict, Field
 
 from holdsteady.project.durations import Duration
 
 ChartName = Literal[
-    "individuals", "mean-range", "mean-sd", "median-range", "p", "np", "c", "u",
+    "individuals",
+    "mean-range",
+    "mean-sd",
+    "median-range",
+    "p",
+    "np",
+    "c",
+    "u",
 ]
 RuleName = Literal[
-    "outside-limits", "two-of-three", "four-of-five", "run-one-side",
-    "trend", "alternating", "hugging", "avoiding-centre",
+    "outside-limits",
+    "two-of-three",
+    "four-of-five",
+    "run-one-side",
+    "trend",
+    "alternating",
+    "hugging",
+    "avoiding-centre",
 ]
 EstimatorName = Literal[
-    "mean-range", "mean-s", "pooled", "weighted", "mean-moving-range", "median-moving-range",
+    "mean-range",
+    "mean-s",
+    "pooled",
+    "weighted",
+    "mean-moving-range",
+    "median-moving-range",
 ]
-Moment = dt.datetime | dt.date
+
+# What a union of types allows is said once, in words; else each of its types would report a fault of its own.
+
+
+def _is_moment(value: object) -> object:
+    if isinstance(value, dt.date):  # a date with a time is one too
+        if not 1900 <= value.year <= 9998:  # the ends of the calendar have no moment in every zone
+            raise ValueError("must lie between the years 1900 and 9998")
+        return value
+    raise ValueError("must be a date, or a date and time, without quotes, as in 2026-03-01T06:00:00")
+
+
+def _is_column_or_size(value: object) -> object:
+    if isinstance(value, bool) or value == "":
+        raise ValueError("must be the name of a column, or a number")
+    if isinstance(value, str) or (isinstance(value, int | float) and math.isfinite(value)):
+        return value
+    raise ValueError("must be the name of a column, or a number")
+
+
+def _is_cell(value: object) -> object:
+    # Truth values are numbers to the language.
+    if isinstance(value, str) or (isinstance(value, int | float) and math.isfinite(value)):
+        return value
+    raise ValueError("must be text, a number, true or false")
+
+
+Moment = Annotated[dt.datetime | dt.date, BeforeValidator(_is_moment)]
+ColumnOrSize = Annotated[str | float, BeforeValidator(_is_column_or_size)]
+Cell = Annotated[str | int | float | bool, BeforeValidator(_is_cell)]
 Identifier = Annotated[str, Field(pattern=r"^[A-Za-z0-9_-]+$")]
+Column = Annotated[str, Field(min_length=1)]
 
 
 class Model(BaseModel):
     """Unknown keys are refused, values are frozen."""
 
-    model_config = ConfigDict(extra="forbid", frozen=True, populate_by_name=True)
+    model_config = ConfigDict(extra="forbid", frozen=True, populate_by_name=True, allow_inf_nan=False)
 
 
 class Site(Model):
@@ -41,7 +90,6 @@ class Site(Model):
     points: Literal["all", "recent"] = "all"
     language: Literal["en"] = "en"
     footer: str | None = None
-    show_people: bool = False
 
 
 class Source(Model):
@@ -49,7 +97,7 @@ class Source(Model):
 
     id: Identifier
     files: tuple[str, ...] = Field(min_length=1)
-    time: str | None = None
+    time: Column | None = None
     delimiter: str | None = None
     decimal: Literal[".", ","] | None = None
     encoding: Literal["utf-8"] | None = None
@@ -93,7 +141,7 @@ class RuleSetting(Model):
 class Subgroup(Model):
     """How readings are gathered: equal values of a column, a count of rows, or a span of clock time."""
 
-    column: str | None = None
+    column: Column | None = None
     size: int | None = Field(default=None, ge=2)
     every: Duration | None = None
 
@@ -112,14 +160,14 @@ class Characteristic(Model):
     title: str = ""
     area: str = ""
     source: str
-    value: str | None = None
-    values: tuple[str, ...] | None = None
-    count: str | None = None
-    size: str | float | None = None
-    where: dict[str, str | int | float | bool] = Field(default_factory=dict)
-    each: tuple[str, ...] = ()
+    value: Column | None = None
+    values: tuple[Column, ...] | None = None
+    count: Column | None = None
+    size: ColumnOrSize | None = None
+    where: dict[str, Cell] = Field(default_factory=dict)
+    each: tuple[Column, ...] = ()
     subgroup: Subgroup | None = None
-    chart: ChartName | None = None  # filled by the loader; see `kind`
+    chart: ChartName | None = None  # None: what the data suggest
     chart_options: dict[str, Any] = Field(default_factory=dict)
     unit: str = ""
     decimals: int | None = Field(default=None, ge=0, le=12)
