@@ -303,7 +303,8 @@ def _summaries(charted: Charted, outside: Bools | None) -> tuple[LevelSummary, .
 def _overdispersion(charted: Charted, panel: Panel) -> float | None:
     if charted.kind.name not in ("p", "u"):
         return None
-    return overdispersion(panel.z, charted.usable & panel.in_baseline & ~np.isnan(panel.z))
+    use = charted.usable & panel.in_baseline & ~np.isnan(panel.z)
+    return overdispersion(panel.z, use, charted.points.segment)
 
 
 def _sigma_ratio(charted: Charted, limits: Limits) -> float | None:
