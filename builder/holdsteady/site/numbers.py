@@ -1,0 +1,120 @@
+"""Numbers as a page shows them: rounded here and nowhere else, with the unit of what was measured."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+_SIGNIFICANT = 4
+_WORDS = (
+    "none", "one", "two", "three", "four", "five", "six", "seven", "eight", "nine", "ten", "eleven",
+    "twelve", "thirteen", "fourteen", "fifteen",
+)  # fmt: skip
+_THIN = "\u202f"  # narrow no-break space between thousands, and before a percent sign
+
+
+def known(value: float) -> bool:
+    """Whether there is a number: results hold NaN where a point has none."""
+    return not math.isnan(value)
+
+
+def spelled(count: int) -> str:
+    """Return 'nine' for 9, '18' for 18: counts up to fifteen are words, as the rules name them."""
+    return _WORDS[count] if 0 <= count < len(_WORDS) else grouped(f"{count:d}")
+
+
+def counted(count: int, singular: str, plural: str = "") -> str:
+    """Return '1 reading', '2 readings'."""
+    return f"{grouped(f'{count:d}')} {singular if count == 1 else plural or singular + 's'}"
+
+
+def opened(text: str) -> str:
+    """Return the text with a capital first letter, the rest as it is."""
+    return text[:1].upper() + text[1:]
+
+
+def listed(parts: list[str]) -> str:
+    """Return 'a', 'a and b', 'a, b and c'."""
+    return parts[0] if len(parts) == 1 else f"{', '.join(parts[:-1])} and {parts[-1]}" if parts else ""
+
+
+def grouped(digits: str) -> str:
+    """Group the whole part in threes from five digits on, with a true minus sign."""
+    sign = "−" if digits.startswith("-") else ""
+    whole, point, rest = digits.lstrip("-").partition(".")
+    if len(whole) > 4 and whole.isdigit():
+        whole = f"{int(whole):,}".replace(",", _THIN)
+    return sign + whole + point + rest
+
+
+def plain(value: float, *, significant: int = _SIGNIFICANT) -> str:
+    """Return a number to so many significant digits; whole numbers stay whole."""
+    if value == round(value) and abs(value) < 1e9:
+        return grouped(f"{value + 0.0:.0f}")
+    magnitude = math.floor(math.log10(abs(value)))
+    if not -6 < magnitude < 9:
+        return f"{value:.{significant - 1}e}".replace("-", "−")
+    return grouped(f"{value:.{max(significant - 1 - magnitude, 0)}f}")
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Scale:
+    """How the values of one statistic are written.
+
+    Fractions are written in percent, with `decimals` counting the percentage's; counts stay whole.
+    """
+
+    statistic: str
+    unit: str = ""
+    decimals: int | None = None
+
+    def bare(self, value: float) -> str:
+        """Return the number alone, rounded to `decimals`, though never to a zero that it is not."""
+        if self.statistic == "fraction":
+            value *= 100
+        if self.statistic == "count" and value == round(value):
+            return plain(value)
+        if self.decimals is None:
+            return plain(value)
+        digits = f"{value:.{self.decimals}f}"
+        if float(digits) == 0:
+            return plain(value, significant=1) if value != 0 else grouped(digits.lstrip("-"))
+        return grouped(digits)
+
+    def apart(self, value: float, limit: float) -> tuple[str, str]:
+        """Return both numbers with their unit, with as many more decimals as it takes to tell them apart."""
+        for more in range(5):
+            decimals = None if self.decimals is None else self.decimals + more
+            written = Scale(statistic=self.statistic, unit=self.unit, decimals=decimals)
+            texts = written.value(value), written.value(limit)
+            if texts[0] != texts[1]:
+                break
+        return texts
+
+    def value(self, value: float) -> str:
+        """Return the number with its unit: '12.004 mm', '2.2 %'."""
+        return self.with_unit(self.bare(value))
+
+    def with_unit(self, text: str) -> str:
+        """Return a number already written, with the unit behind it."""
+        if self.statistic == "fraction":
+            return f"{text}{_THIN}%"
+        return f"{text} {self.unit}" if self.unit else text
+
+    def difference(self, value: float) -> str:
+        """Return the size of a difference: '0.004 mm', '1.2 percentage points'."""
+        if self.decimals is None or self.statistic == "count":
+            # An estimate: two digits say all that it knows.
+            text = plain(abs(value) * (100 if self.statistic == "fraction" else 1), significant=2)
+        else:
+            text = self.bare(abs(value))
+        return f"{text} percentage points" if self.statistic == "fraction" else self.with_unit(text)
+
+    def figure(self, value: float, *, unit: bool) -> str:
+        """Return a figure of a calculation: four significant digits, and no fewer decimals than a reading."""
+        text = plain(value)
+        if unit and self.decimals is not None and abs(value) < 1e9:
+            longer = grouped(f"{value:.{self.decimals}f}")
+            text = max(text, longer, key=len) if float(f"{value:.{self.decimals}f}") else text
+        text = text.rstrip("0").rstrip(".") if "." in text and "e" not in text else text
+        return f"{text} {self.unit}" if unit and self.unit and self.statistic != "fraction" else text

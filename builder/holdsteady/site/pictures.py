@@ -1,0 +1,29 @@
+"""Pictures in the page itself, drawn by the builder: strips, and the charts before they come alive."""
+
+from __future__ import annotations
+
+from zoneinfo import ZoneInfo
+
+from markupsafe import Markup
+
+from holdsteady.charts import static, strip
+from holdsteady.charts.labels import Labels
+from holdsteady.charts.picture import in_open_case
+from holdsteady.monitor.finding import Case, Finding
+from holdsteady.site.words import panel_named, statistic_said
+
+
+def strip_picture(finding: Finding, case: Case | None, *, width: int, height: int) -> Markup:
+    """Return the last points of the panel that a case is on, else of the first; nothing without points."""
+    if not finding.panels:
+        return Markup()
+    panel = finding.panels[0] if case is None else panel_named(finding, case.panel)
+    title = f"{finding.title}: last {min(len(panel.z), strip.POINTS)} points, {statistic_said(panel)}"
+    part = in_open_case(finding, panel)
+    # The charts escape every text they draw.
+    return Markup(strip.strip(panel.z, part, title=title, width=width, height=height))  # noqa: S704
+
+
+def chart_picture(finding: Finding, zone: ZoneInfo, labels: Labels) -> Markup:
+    """Return the chart that stands until the live one has replaced it, and on paper and without scripts."""
+    return Markup(static.static_chart(finding, zone, labels))  # noqa: S704
