@@ -66,7 +66,7 @@
       view.data(panel.name + "_bands", steps.bands);
       view.data(panel.name + "_edges", steps.edges);
       view.data(panel.name + "_centres", steps.centres);
-      view.data(panel.name + "_starts", rows.starts(data, k, chart.win));
+      view.data(panel.name + "_starts", rows.starts(data, k, chart.win, frame.pixel));
     });
     ["words", "spans", "ticks", "brackets"].forEach((name) => view.data(name, frame[name]));
     view.data("reading", []).run();

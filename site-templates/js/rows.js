@@ -180,11 +180,18 @@
     return { bands: bands, edges: edges, centres: centres };
   }
 
-  /** Rows of `<panel>_starts`: where open cases of this panel likely began. */
-  function starts(data, panel, win) {
+  /** Rows of `<panel>_starts`: where open cases of this panel likely began, not reaching into a pause. */
+  function starts(data, panel, win, pixel) {
+    const near = 6 * pixel;
     return data.cases
       .filter((c) => c.tone === "open" && c.panel === panel && c.low !== null && c.high !== null && c.high >= win.from)
-      .map((c) => ({ x: between(data, Math.max(c.low, win.from)), x2: between(data, c.high + 1) }));
+      .map((c) => {
+        const low = Math.max(c.low, win.from);
+        return {
+          x: Math.max(between(data, low), at(data, low) - near),
+          x2: Math.min(between(data, c.high + 1), at(data, c.high) + near),
+        };
+      });
   }
 
   holdsteady.rows = {

@@ -122,7 +122,8 @@ def test_counts_stay_whole_and_estimated_differences_short() -> None:
 
 def test_figures_of_a_calculation_have_no_fewer_decimals_than_a_reading() -> None:
     bore = Scale(statistic="value", unit="mm", decimals=3)
-    assert bore.figure(12.00139, unit=True) == "12.001 mm"
+    assert bore.figure(12.00139, unit=True) == "12.0014 mm"
+    assert bore.figure(12.0, unit=True) == "12.000 mm"
     assert bore.figure(0.0080412, unit=True) == "0.008041 mm"
     assert bore.figure(0.0004, unit=True) == "0.0004 mm"
     assert bore.figure(2.32593, unit=False) == "2.326"

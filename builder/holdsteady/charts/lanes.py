@@ -43,6 +43,11 @@ class Across:
             return float(self.x[-1] + (min(_OUTSIDE, (self.x[-1] - self.x[-2]) / 2) if last else _OUTSIDE))
         return float(self.x[index - 1] + self.x[index]) / 2
 
+    def around(self, first: int, last: int) -> tuple[float, float]:
+        """Return the pixels around points first to last, not reaching far into a pause beside them."""
+        start = max(self.between(first), float(self.x[first]) - _OUTSIDE)
+        return start, min(self.between(last + 1), float(self.x[last]) + _OUTSIDE)
+
     def edge(self, row: LimitsInForce, index: int) -> float:
         """Return where a step of a row of limits begins or ends, a little apart from the row beside it."""
         place = self.between(index)

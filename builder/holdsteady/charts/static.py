@@ -153,7 +153,7 @@ def _draw_panel(
             and case.start_low_index is not None
             and case.start_high_index is not None
         ):
-            x1, x2 = across.between(case.start_low_index), across.between(case.start_high_index + 1)
+            x1, x2 = across.around(case.start_low_index, case.start_high_index)
             sheet.rectangle("start", x1, heights.top, x2, heights.bottom)
     marks = picture.marks(finding, panel)
     shown = thinned(across.x, panel.value, marks != picture.POINT)

@@ -29,6 +29,7 @@ class Chart:
     kind: str
     id: str
     src: str
+    show: str  # the part that is shown first: "60", the last points, or "all"
     picture: Markup
 
 

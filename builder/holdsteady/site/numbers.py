@@ -111,10 +111,23 @@ class Scale:
         return f"{text} percentage points" if self.statistic == "fraction" else self.with_unit(text)
 
     def figure(self, value: float, *, unit: bool) -> str:
-        """Return a figure of a calculation: four significant digits, and no fewer decimals than a reading."""
-        text = plain(value)
-        if unit and self.decimals is not None and abs(value) < 1e9:
-            longer = grouped(f"{value:.{self.decimals}f}")
-            text = max(text, longer, key=len) if float(f"{value:.{self.decimals}f}") else text
-        text = text.rstrip("0").rstrip(".") if "." in text and "e" not in text else text
+        """Return a figure of a calculation: four significant digits, and a decimal more than a reading has.
+
+        Zeros at the end go, down to the decimals of a reading.
+        """
+        text, fewest = plain(value), 0
+        if unit and self.decimals is not None and self.statistic != "fraction" and abs(value) < 1e9:
+            longer = f"{value:.{self.decimals + 1}f}"
+            text = max(text, grouped(longer), key=len) if float(longer) else text
+            fewest = self.decimals
+        text = _without_zeros(text, fewest)
         return f"{text} {self.unit}" if unit and self.unit and self.statistic != "fraction" else text
+
+
+def _without_zeros(text: str, fewest: int) -> str:
+    """Return a number without the zeros at its end, down to the fewest decimals wanted."""
+    whole, point, decimals = text.partition(".")
+    if not point or "e" in text:
+        return text
+    kept = decimals[:fewest] + decimals[fewest:].rstrip("0")
+    return f"{whole}.{kept}" if kept else whole

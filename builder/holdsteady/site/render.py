@@ -15,7 +15,7 @@ from holdsteady.places import templates
 from holdsteady.site.assets import content_named, shared_assets
 from holdsteady.site.characteristic_page import Chart
 from holdsteady.site.labels import SiteLabels
-from holdsteady.site.pictures import chart_picture
+from holdsteady.site.pictures import chart_picture, first_shown
 from holdsteady.site.plan import PlannedPage, clock_of, plan
 from holdsteady.site.view import SiteView
 
@@ -54,6 +54,7 @@ def render(
                 kind=finding.chart,
                 id=finding.slug,
                 src=f"../{path}",
+                show=first_shown(finding),
                 picture=chart_picture(finding, project_view.zone, labels),
             )
     for page in plan(findings, intake, project_view, assets, charts):

@@ -1,0 +1,178 @@
+"""Which files belong to a source."""
+
+from __future__ import annotations
+
+import fnmatch
+import os
+import re
+import stat
+from collections.abc import Iterator
+from dataclasses import dataclass, field
+from pathlib import Path
+
+from holdsteady.intake.readings import SetAside
+from holdsteady.project.settings import Settings
+
+ENDINGS = (".csv", ".tsv", ".txt")
+_OURS = ("holdsteady.toml", "logbook.csv", "limits.csv")
+_WILD = re.compile(r"[*?\[]")
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Found:
+    """A file that a glob matched; `trouble` says why it may not be opened."""
+
+    name: str  # below the project folder, with "/"
+    path: Path
+    trouble: str = ""
+
+
+@dataclass(slots=True)
+class Scanner:
+    """Walks a project folder for the globs of its sources, listing each folder once.
+
+    The published site and the project's own tables are no measurement files.
+    """
+
+    folder: Path
+    settings: Settings
+    _listings: dict[Path, list[os.DirEntry[str]]] = field(default_factory=dict)
+    _closed: dict[str, str] = field(default_factory=dict)
+    _root: Path = field(init=False)
+    _site: Path | None = field(init=False)
+
+    def __post_init__(self) -> None:
+        self._root = self.folder.resolve()
+        site = (self.folder / self.settings.site.output).resolve()
+        self._site = None if self._root.is_relative_to(site) else site
+
+    def files(self, globs: tuple[str, ...]) -> tuple[Found, ...]:
+        """Return the files that any of the globs matches, in the order of their paths."""
+        found: dict[str, Found] = {}
+        for glob in globs:
+            parts = [part for part in glob.replace("\\", "/").split("/") if part not in ("", ".")]
+            if ".." in parts or Path(glob).is_absolute():
+                continue
+            for path in self._expand(self.folder, parts, frozenset({self._root})):
+                one = self._look(path)
+                if one is not None:
+                    found.setdefault(one.name, one)
+        return tuple(found[name] for name in sorted(found))
+
+    def closed_folders(self) -> tuple[SetAside, ...]:
+        """Return a line for each folder that could not be listed."""
+        return tuple(
+            SetAside(file=name, line=None, column="", reason=reason, text="")
+            for name, reason in sorted(self._closed.items())
+        )
+
+    def _expand(self, folder: Path, parts: list[str], above: frozenset[Path]) -> Iterator[Path]:
+        if not parts:
+            return
+        part, rest = parts[0], parts[1:]
+        if part == "**":
+            yield from self._expand(folder, rest or ["*"], above)
+            for entry in self._list(folder):
+                if not entry.name.startswith(".") and self._enters(entry, above):
+                    inner = Path(entry.path)
+                    yield from self._expand(inner, parts, above | {inner.resolve()})
+            return
+        matches = _matcher(part, last=not rest)
+        for entry in self._list(folder):
+            if not matches(entry.name):
+                continue
+            if not rest:
+                yield Path(entry.path)
+            elif self._enters(entry, above):
+                inner = Path(entry.path)
+                yield from self._expand(inner, rest, above | {inner.resolve()})
+            elif entry.is_symlink() and not self._inside(Path(entry.path)):
+                yield Path(entry.path)
+
+    def _list(self, folder: Path) -> list[os.DirEntry[str]]:
+        if folder not in self._listings:
+            try:
+                with os.scandir(folder) as entries:
+                    self._listings[folder] = sorted(entries, key=lambda entry: entry.name)
+            except OSError as error:
+                self._closed[self._name(folder)] = f"the folder cannot be listed: {error.strerror}"
+                self._listings[folder] = []
+        return self._listings[folder]
+
+    def _enters(self, entry: os.DirEntry[str], above: frozenset[Path]) -> bool:
+        try:
+            if not entry.is_dir():
+                return False
+        except OSError:
+            return False
+        target = Path(entry.path).resolve()
+        return target not in above and target != self._site and self._inside(target)
+
+    def _inside(self, path: Path) -> bool:
+        return path.resolve().is_relative_to(self._root)
+
+    def _look(self, path: Path) -> Found | None:
+        name = self._name(path)
+        if name in _OURS:
+            return None
+        try:
+            if path.is_symlink():
+                target = path.resolve()
+                if not target.is_relative_to(self._root):
+                    reason = "a link out of the project folder; copy the file in"
+                    return Found(name=name, path=path, trouble=reason)
+                if self._site is not None and target.is_relative_to(self._site):
+                    return None
+            mode = path.stat().st_mode
+        except (OSError, RuntimeError) as error:
+            reason = getattr(error, "strerror", None) or "the link leads nowhere"
+            return Found(name=name, path=path, trouble=f"cannot be opened: {reason}")
+        if stat.S_ISDIR(mode):
+            return None
+        return Found(name=name, path=path, trouble=_unfit(name, mode))
+
+    def _name(self, path: Path) -> str:
+        relative = path.relative_to(self.folder).as_posix()
+        return os.fsencode(relative).decode("utf-8", "backslashreplace")
+
+
+def _unfit(name: str, mode: int) -> str:
+    if not stat.S_ISREG(mode):
+        return "not a regular file; only regular files are opened"
+    lowered = name.lower()
+    if lowered.endswith(".gz"):
+        return "compressed, which is not supported yet; unpack it"
+    if not lowered.endswith(ENDINGS):
+        return "not a .csv, .tsv or .txt file; save it as one or narrow `files` of its source"
+    return ""
+
+
+def _matcher(part: str, *, last: bool) -> _Named:
+    if not _WILD.search(part) and not last:
+        return _Named(part)
+    stem, dot, ending = part.rpartition(".")
+    if last and dot and not _WILD.search(ending):
+        literal = "".join(
+            f"[{character.lower()}{character.upper()}]" if character.isalpha() else re.escape(character)
+            for character in ending
+        )
+        pattern = _translated(stem) + r"\." + literal
+    else:
+        pattern = _translated(part)
+    hidden = "" if part.startswith(".") else r"(?!\.)"
+    return _Named(part, re.compile(hidden + pattern, re.DOTALL))
+
+
+def _translated(part: str) -> str:
+    return fnmatch.translate(part).removesuffix(r"\Z").removesuffix(r"\z")
+
+
+@dataclass(frozen=True, slots=True)
+class _Named:
+    """Says whether a name matches one part of a glob."""
+
+    text: str
+    pattern: re.Pattern[str] | None = None
+
+    def __call__(self, name: str) -> bool:
+        return name == self.text or (self.pattern is not None and self.pattern.fullmatch(name) is not None)
