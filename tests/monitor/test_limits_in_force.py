@@ -48,13 +48,13 @@ def test_adopted_limits_judge_only_points_from_their_day_on() -> None:
     later = START + 12 * HOUR
     lines = [adopted(later, 30.0, 1.0), adopted(later, 30.0, 1.0, panel="spread")]
     after = find(values, made=context(register=lines))
-    kinds = [(row.panel, row.kind, row.start_index, row.stop_index) for row in after.limits]
-    assert kinds == [
+    kinds = {(row.panel, row.kind, row.start_index, row.stop_index) for row in after.limits}
+    assert kinds == {
         ("location", "provisional", 0, 11),
         ("spread", "provisional", 0, 11),
         ("location", "adopted", 11, 12),
         ("spread", "adopted", 11, 12),
-    ]
+    }
     # The point before is judged as it was; only the one from that day on is judged anew.
     assert after.panels[0].met["outside-limits"][10] == before.panels[0].met["outside-limits"][10] == 1
     assert before.panels[0].met["outside-limits"][11] == 1
@@ -145,3 +145,36 @@ def test_a_baseline_span_holds_for_its_era_alone() -> None:
     finding = find([99.0, 99.0, *QUIET, 50.0], given={"baseline": baseline})
     assert finding.limits[0].centre == pytest.approx(np.mean(QUIET))
     assert finding.panels[0].in_baseline.tolist() == [False, False, *[True] * 10, False]
+
+
+def test_a_line_for_one_panel_leaves_the_other_as_it_was() -> None:
+    finding = find(QUIET, made=context(register=[adopted(START + 5 * HOUR, 10.0, 1.0)]))
+    rows = {(row.panel, row.kind, row.start_index, row.stop_index) for row in finding.limits}
+    assert rows == {
+        ("location", "provisional", 0, 4),
+        ("location", "adopted", 4, 10),
+        ("spread", "provisional", 0, 10),
+    }
+    assert np.isfinite(finding.panels[1].upper).all()
+
+
+def test_of_two_sets_in_force_the_one_adopted_later_counts() -> None:
+    first = adopted(START + 8 * HOUR, 10.0, 1.0, adopted_at=START + 20 * HOUR)
+    second = adopted(START + 5 * HOUR, 11.0, 1.0, line=3, adopted_at=START + 30 * HOUR)
+    finding = find(QUIET, made=context(register=[first, second]))
+    assert finding.panels[0].centre[[3, 4, 9]].tolist() == [pytest.approx(10.1), 11.0, 11.0]
+
+
+def test_limits_that_are_kept_name_the_points_that_set_them() -> None:
+    change = entry(START + 11 * HOUR, kind="process-change", action="keep-limits")
+    finding = find(QUIET * 2, made=context(logbook=[change]))
+    first, second = [row for row in finding.limits if row.panel == "location"]
+    assert (second.baseline_from, second.baseline_to) == (first.baseline_from, first.baseline_to)
+    assert second.note == "kept from the era before"
+    assert finding.panels[0].in_baseline.tolist() == [True] * 10 + [False] * 10
+
+
+def test_adopted_limits_keep_the_width_they_were_adopted_with() -> None:
+    lines = [adopted(START, 10.0, 1.0, width=2.0)]
+    finding = find(QUIET, made=context(register=lines), given={"width": 4.0})
+    assert finding.panels[0].upper[0] == 12.0

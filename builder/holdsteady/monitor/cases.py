@@ -97,7 +97,7 @@ def _case(charted: Charted, members: Sequence[Signal], panels: Mapping[str, Pane
     return Case(
         id=case_form(lead.id),
         aliases=aliases,
-        state="answered" if reasons else _state(charted, members, panels, era),
+        state="answered" if reasons else _state(charted, members, panels),
         direction=lead.direction,
         panel=lead.panel,
         first_index=first,
@@ -145,7 +145,7 @@ def _start(panel: Panel, era: Era, last: int, direction: Direction) -> _Start:
     )
 
 
-def _state(charted: Charted, members: Sequence[Signal], panels: Mapping[str, Panel], era: Era) -> CaseState:
+def _state(charted: Charted, members: Sequence[Signal], panels: Mapping[str, Panel]) -> CaseState:
     """Return the state of a case without an answer.
 
     Without times nothing is known to be over, so such a case stays open until it is answered.
@@ -154,10 +154,7 @@ def _state(charted: Charted, members: Sequence[Signal], panels: Mapping[str, Pan
     last = max(s.last_index for s in members)
     last_time = _time(charted.points, last)
     if all(_inside_baseline(signal, panels[signal.panel]) for signal in members):
-        if not any(_gross(signal, panels[signal.panel]) for signal in members):
-            return "baseline"
-        if era is charted.eras[-1]:
-            return "open"  # it bends the limits now in use
+        return "open" if any(_gross(signal, panels[signal.panel]) for signal in members) else "baseline"
     if last_time is not None and not any(s.ongoing for s in members):
         if context.watch_from is not None and last_time < context.watch_from:
             return "historical"
@@ -167,11 +164,13 @@ def _state(charted: Charted, members: Sequence[Signal], panels: Mapping[str, Pan
 
 
 def _inside_baseline(signal: Signal, panel: Panel) -> bool:
-    return bool(panel.in_baseline[signal.fired_index] and panel.in_baseline[signal.last_index])
+    ends = [signal.first_index, signal.fired_index, signal.last_index]
+    return bool(np.all(panel.in_baseline[ends]))
 
 
 def _gross(signal: Signal, panel: Panel) -> bool:
-    return bool(np.nanmax(np.abs(panel.z[signal.first_index : signal.last_index + 1])) > GROSS)
+    span = slice(signal.first_index, signal.last_index + 1)
+    return bool(np.any(np.abs(panel.z[span][panel.judged[span]]) > GROSS))
 
 
 def _good_way(lead: Signal, settings: Characteristic) -> bool:

@@ -78,7 +78,9 @@ def _apply(charted: Charted, panel: Panel) -> tuple[dict[str, Ints], dict[str, s
     met: dict[str, Ints] = {}
     reasons: dict[str, str] = {}
     signals: list[Signal] = []
-    newest = int(np.flatnonzero(panel.judged)[-1]) if np.any(panel.judged) else -1
+    segment = charted.points.segment
+    going_on = np.flatnonzero(panel.judged & (segment == segment[-1]))
+    newest = int(going_on[-1]) if going_on.size else -1
     for rule in panel.rules:
         scope, side, reason = _scope(charted, rule, panel)
         if reason:

@@ -8,7 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from types import ModuleType
-from typing import Literal, Protocol
+from typing import Any, Literal, Protocol
 
 import numpy as np
 
@@ -56,9 +56,19 @@ class ChartKind(Protocol):
         """Estimate centre and sigma from the points in `use`."""
 
     def lines(
-        self, panel: str, centre: float, sigma: float | None, n: Floats, settings: Characteristic
+        self,
+        panel: str,
+        centre: float,
+        sigma: float | None,
+        n: Floats,
+        *,
+        width: float,
+        options: Mapping[str, Any],
     ) -> Lines:
-        """Return centre line and limits of a panel for points of size `n`."""
+        """Return centre line and limits of a panel, `width` sigmas wide, for points of size `n`.
+
+        `sigma` is that of a single reading, None for counts; `options` are the chart's own settings.
+        """
 
 
 class Individuals:
@@ -91,15 +101,20 @@ class Individuals:
         )
 
     def lines(
-        self, panel: str, centre: float, sigma: float | None, n: Floats, settings: Characteristic
+        self,
+        panel: str,
+        centre: float,
+        sigma: float | None,
+        n: Floats,
+        *,
+        width: float,
+        options: Mapping[str, Any],
     ) -> Lines:
         """Return limits of the values, or the upper limit of the moving ranges."""
         assert sigma is not None
         if panel == "location":
-            return individuals.location(centre, sigma, n.size, settings.width)
-        return individuals.spread(
-            sigma, n.size, settings.chart_options.get("moving_range_limit", "probability")
-        )
+            return individuals.location(centre, sigma, n.size, width)
+        return individuals.spread(sigma, n.size, options.get("moving_range_limit", "probability"))
 
 
 class Subgrouped:
@@ -136,14 +151,21 @@ class Subgrouped:
         return result
 
     def lines(
-        self, panel: str, centre: float, sigma: float | None, n: Floats, settings: Characteristic
+        self,
+        panel: str,
+        centre: float,
+        sigma: float | None,
+        n: Floats,
+        *,
+        width: float,
+        options: Mapping[str, Any],  # noqa: ARG002
     ) -> Lines:
         """Return limits for subgroups of size n."""
         assert sigma is not None
         result: Lines = (
-            self._module.location(centre, sigma, n, settings.width)
+            self._module.location(centre, sigma, n, width)
             if panel == "location"
-            else self._module.spread(sigma, n, settings.width)
+            else self._module.spread(sigma, n, width)
         )
         return result
 
@@ -197,10 +219,12 @@ class Attribute:
         centre: float,
         sigma: float | None,  # noqa: ARG002
         n: Floats,
-        settings: Characteristic,
+        *,
+        width: float,
+        options: Mapping[str, Any],  # noqa: ARG002
     ) -> Lines:
         """Return limits for sizes n; sigma follows from the centre."""
-        result: Lines = self._module.lines(centre, n.size if self.name == "c" else n, settings.width)
+        result: Lines = self._module.lines(centre, n.size if self.name == "c" else n, width)
         return result
 
 

@@ -1,7 +1,8 @@
 """Which points set the limits, and which limits are in force at each point.
 
 A point is judged by what was in force at its own time: given limits, else the latest adopted ones, else
-provisional ones. Nothing adopted later changes how an earlier point was judged.
+provisional ones. Nothing adopted later changes how an earlier point was judged. Each panel goes its own way,
+since the register has a line for each.
 """
 
 from __future__ import annotations
@@ -14,25 +15,43 @@ import numpy as np
 from holdsteady.arrays import Bools, Floats, Ints, frozen
 from holdsteady.monitor.charted import Charted
 from holdsteady.monitor.finding import Era, LimitsInForce, LimitsKind
-from holdsteady.monitor.kinds import ChartKind
 from holdsteady.project.register import RegisterLine
 from holdsteady.spc.result import Estimate, Lines
 from holdsteady.times import to_microseconds
 
 FEWEST = 8  # points in an era, before there are any limits
+_KEPT = "kept from the era before"
+_LINES = ("centre", "lower", "upper", "sigma")
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Baseline:
+    """The points that a set of limits was estimated from. Times are None without a time column."""
+
+    points: int | None
+    first: int | None
+    last: int | None
+    excluded: int | None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Source:
-    """One set of parameters of an era: where they come from and from when they hold."""
+    """One set of limits of one panel: its parameters, where they come from, and from when they hold."""
 
     kind: LimitsKind
     from_time: int | None  # None: from the era's first point
-    parameters: Mapping[str, tuple[float, float | None]]  # panel -> centre, sigma of a single reading
-    estimate: Estimate | None
+    centre: float
+    sigma: float | None  # of a single reading; None for counts
+    width: float
     estimator: str
-    note: str
-    lines: Mapping[str, RegisterLine]  # of an adopted set
+    baseline: Baseline
+    note: str = ""
+    line: RegisterLine | None = None  # of an adopted set
+
+    @property
+    def kept(self) -> bool:
+        """Whether no point of the era itself has set these limits."""
+        return self.note == _KEPT
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -42,7 +61,26 @@ class Limits:
     rows: tuple[LimitsInForce, ...]
     lines: Mapping[str, Lines]
     in_baseline: Bools
-    estimates: Mapping[int, Estimate]  # by era
+    estimates: Mapping[int, Estimate]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Learnt:
+    """What an era's own first points tell."""
+
+    use: Bools  # (N,) the points
+    baseline: Baseline
+    estimate: Estimate | None
+    enough: bool
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Span:
+    """A source in force over points [start, stop)."""
+
+    source: Source
+    start: int
+    stop: int
 
 
 def baseline_points(charted: Charted, era: Era) -> Bools:
@@ -64,31 +102,32 @@ def baseline_points(charted: Charted, era: Era) -> Bools:
 
 
 def in_force(charted: Charted, adopted: Sequence[RegisterLine]) -> Limits:
-    """Work out the limits of every era, and lay them along the points."""
+    """Work out the limits of every era and panel, and lay them along the points."""
     points, kind = charted.points, charted.kind
     in_baseline = np.zeros(points.points, dtype=np.bool_)
     rows: list[LimitsInForce] = []
     estimates: dict[int, Estimate] = {}
     lines = {panel: _no_lines(points.points) for panel in kind.panels}
-    last: Source | None = None
+    last: dict[str, Source | None] = dict.fromkeys(kind.panels)
+    first_panel = next(iter(kind.panels))
     for era in charted.eras:
-        use = baseline_points(charted, era)
-        facts = _facts(charted, era, use)
-        if np.any(use):
-            estimates[era.number] = kind.estimate(points, charted.values, use, charted.settings)
-        sources = _sources(charted, era, estimates.get(era.number) if facts.enough else None, adopted, last)
-        spans = _spans(era, sources, points.time)
-        start = spans[0].start if spans else era.stop_index
-        if start > era.start_index:
-            rows.append(_median_row(charted, era, facts, start, estimates.get(era.number)))
-            if rows[-1].centre is not None:
-                lines[rows[-1].panel].centre[era.start_index : start] = rows[-1].centre
-        for span in spans:
-            for panel in span.source.parameters:
-                rows.append(_row(charted, era, panel, span, facts))
+        learnt = _learn(charted, era)
+        if learnt.estimate is not None:
+            estimates[era.number] = learnt.estimate
+        for panel in kind.panels:
+            mine = [line for line in adopted if line.panel == panel and line.era_from == era.from_time]
+            sources = _sources(charted, era, learnt, mine, last[panel])
+            spans = _spans(era, sources, points.time)
+            start = spans[0].start if spans else era.stop_index
+            if panel == first_panel:
+                in_baseline |= _shown_baseline(charted, era, learnt, spans)
+                if start > era.start_index:
+                    rows.append(_row_without_limits(charted, era, learnt, start))
+                    _lay_centre(lines[panel], rows[-1])
+            for span in spans:
+                rows.append(_row(charted, era, panel, span))
                 _lay(charted, lines[panel], panel, span)
-        in_baseline |= _shown_baseline(charted, era, use, [span.source for span in spans])
-        last = sources[-1] if sources else None
+            last[panel] = _at_the_end(era, spans)
     return Limits(
         rows=tuple(rows),
         lines={panel: _freeze(each) for panel, each in lines.items()},
@@ -97,83 +136,94 @@ def in_force(charted: Charted, adopted: Sequence[RegisterLine]) -> Limits:
     )
 
 
+def _learn(charted: Charted, era: Era) -> _Learnt:
+    use = baseline_points(charted, era)
+    where = np.flatnonzero(use)
+    if where.size == 0:
+        nothing = Baseline(points=0, first=None, last=None, excluded=0)
+        return _Learnt(use=use, baseline=nothing, estimate=None, enough=False)
+    time = charted.points.time
+    return _Learnt(
+        use=use,
+        baseline=Baseline(
+            points=where.size,
+            first=None if time is None else int(time[where[0]]),
+            last=None if time is None else int(time[where[-1]]),
+            excluded=int(np.sum(charted.excluded[era.start_index : where[-1] + 1])),
+        ),
+        estimate=charted.kind.estimate(charted.points, charted.values, use, charted.settings),
+        enough=where.size >= FEWEST,
+    )
+
+
 def _sources(
-    charted: Charted,
-    era: Era,
-    estimate: Estimate | None,
-    adopted: Sequence[RegisterLine],
-    last: Source | None,
+    charted: Charted, era: Era, learnt: _Learnt, adopted: Sequence[RegisterLine], last: Source | None
 ) -> list[Source]:
-    """Return the sets that hold in an era in the order of their rank: a later one covers an earlier one."""
-    kind = charted.kind
+    """Return the sets that hold in an era in the order of their rank: a later one covers an earlier one.
+
+    `last` is what was in force at the end of the era before. Adopted sets rank by when they were adopted, so
+    that the latest one in force at a point is the one that counts.
+    """
     sources: list[Source] = []
     if era.action == "keep-limits" and last is not None:
-        sources.append(replace(last, from_time=None, note="kept from the era before"))
-    elif estimate is not None:
-        sources += _provisional(era, kind, estimate, last)
-    mine = [line for line in adopted if line.era_from == era.from_time]
-    for moment in sorted({line.in_force_from for line in mine}):
-        latest = {line.panel: line for line in mine if line.in_force_from == moment}
-        sources.append(
-            Source(
-                kind="adopted",
-                from_time=moment,
-                parameters={
-                    panel: (latest[panel].centre, latest[panel].sigma)
-                    for panel in kind.panels
-                    if panel in latest
-                },
-                estimate=None,
-                estimator=next(iter(latest.values())).estimator,
-                note="",
-                lines=latest,
-            )
-        )
+        sources.append(replace(last, from_time=None, note=_KEPT))
+    elif learnt.estimate is not None and learnt.enough:
+        sources += _provisional(charted, era, learnt, last)
+    sources += [_adopted(line) for line in sorted(adopted, key=lambda line: (line.adopted_at, line.line))]
     sources += [
         Source(
             kind="given",
             from_time=None if given.from_ is None else to_microseconds(given.from_, charted.context.zone),
-            parameters=dict.fromkeys(kind.panels, (given.centre, given.sigma)),
-            estimate=None,
+            centre=given.centre,
+            sigma=given.sigma,
+            width=charted.settings.width,
             estimator="given",
-            note="",
-            lines={},
+            baseline=Baseline(points=None, first=None, last=None, excluded=None),
         )
         for given in charted.settings.limits
     ]
     return sources
 
 
-def _provisional(era: Era, kind: ChartKind, estimate: Estimate, last: Source | None) -> list[Source]:
-    sigma, estimator = estimate.sigma, estimate.estimator
-    note = estimate.finding
-    if era.action == "keep-sigma" and last is not None:
-        sigma = next(iter(last.parameters.values()))[1]
-        estimator, note = last.estimator, "sigma kept from the era before"
-    if not kind.attribute and not sigma:
-        return []
-    if kind.attribute and estimate.finding:
+def _provisional(charted: Charted, era: Era, learnt: _Learnt, last: Source | None) -> list[Source]:
+    """Return the limits that the era's own points give; none where they allow none."""
+    estimate = learnt.estimate
+    assert estimate is not None
+    sigma, estimator, note = estimate.sigma, estimate.estimator, estimate.finding
+    if charted.kind.attribute:
+        if estimate.finding:
+            return []
+    elif era.action == "keep-sigma" and last is not None:
+        sigma, estimator, note = last.sigma, last.estimator, "sigma kept from the era before"
+    elif not sigma:
         return []
     return [
         Source(
             kind="provisional",
             from_time=None,
-            parameters=dict.fromkeys(kind.panels, (estimate.centre, sigma)),
-            estimate=estimate,
+            centre=estimate.centre,
+            sigma=sigma,
+            width=charted.settings.width,
             estimator=estimator,
+            baseline=learnt.baseline,
             note=note,
-            lines={},
         )
     ]
 
 
-@dataclass(frozen=True, slots=True, kw_only=True)
-class _Span:
-    """A source in force over points [start, stop)."""
-
-    source: Source
-    start: int
-    stop: int
+def _adopted(line: RegisterLine) -> Source:
+    return Source(
+        kind="adopted",
+        from_time=line.in_force_from,
+        centre=line.centre,
+        sigma=line.sigma,
+        width=line.width,
+        estimator=line.estimator,
+        baseline=Baseline(
+            points=line.points, first=line.baseline_from, last=line.baseline_to, excluded=line.excluded
+        ),
+        line=line,
+    )
 
 
 def _spans(era: Era, sources: Sequence[Source], time: Ints | None) -> list[_Span]:
@@ -204,59 +254,39 @@ def _spans(era: Era, sources: Sequence[Source], time: Ints | None) -> list[_Span
     return spans + waiting
 
 
-@dataclass(frozen=True, slots=True, kw_only=True)
-class _Facts:
-    """What the baseline of an era consists of."""
-
-    points: int
-    first: int | None
-    last: int | None
-    excluded: int
-    enough: bool
+def _at_the_end(era: Era, spans: Sequence[_Span]) -> Source | None:
+    """Return the source in force at the last point of an era."""
+    return next((span.source for span in spans if span.start < span.stop == era.stop_index), None)
 
 
-def _facts(charted: Charted, era: Era, use: Bools) -> _Facts:
-    where = np.flatnonzero(use)
-    if where.size == 0:
-        return _Facts(points=0, first=None, last=None, excluded=0, enough=False)
-    points = charted.points
-    before = slice(era.start_index, where[-1] + 1)
-    return _Facts(
-        points=where.size,
-        first=None if points.time is None else int(points.time[where[0]]),
-        last=None if points.time is None else int(points.time[where[-1]]),
-        excluded=int(np.sum(charted.excluded[before])),
-        enough=where.size >= FEWEST,
-    )
-
-
-def _shown_baseline(charted: Charted, era: Era, use: Bools, sources: Sequence[Source]) -> Bools:
+def _shown_baseline(charted: Charted, era: Era, learnt: _Learnt, spans: Sequence[_Span]) -> Bools:
     """Return the points that set an era's limits: those of the latest adopted set, else the first ones.
 
-    Given limits are set by no point.
+    Given limits are set by no point, and kept ones by none of this era.
     """
-    if sources and all(source.kind == "given" for source in sources):
-        return np.zeros_like(use)
-    adopted = [line for source in sources if source.kind == "adopted" for line in source.lines.values()]
+    sources = [span.source for span in spans]
+    if sources and all(source.kind == "given" or source.kept for source in sources):
+        return np.zeros_like(learnt.use)
+    shown = learnt.use.copy()
     time = charted.points.time
-    if not adopted or time is None:
-        return use
-    latest = max(adopted, key=lambda line: line.in_force_from)
-    if latest.baseline_from is None or latest.baseline_to is None:
-        return use
-    here = slice(era.start_index, era.stop_index)
-    inside = np.zeros_like(use)
-    inside[here] = (time[here] >= latest.baseline_from) & (time[here] <= latest.baseline_to)
-    return inside & charted.usable
+    lines = [source.line for source in sources if source.line is not None and not source.kept]
+    if lines and time is not None:
+        latest = max(lines, key=lambda line: (line.adopted_at, line.line))
+        if latest.baseline_from is not None and latest.baseline_to is not None:
+            here = slice(era.start_index, era.stop_index)
+            shown[:] = False
+            shown[here] = (time[here] >= latest.baseline_from) & (time[here] <= latest.baseline_to)
+            shown &= charted.usable
+    for span in spans:
+        if span.source.kind == "given":
+            shown[span.start : span.stop] = False
+    return shown
 
 
-def _row(charted: Charted, era: Era, panel: str, span: _Span, facts: _Facts) -> LimitsInForce:
+def _row(charted: Charted, era: Era, panel: str, span: _Span) -> LimitsInForce:
     source, points = span.source, charted.points
-    centre, sigma = source.parameters[panel]
     n = points.n[span.start : span.stop] if span.stop > span.start else points.n[-1:]
-    lines = charted.kind.lines(panel, centre, sigma, n, charted.settings)
-    line = source.lines.get(panel)
-    learnt = source.kind == "provisional"
+    lines = _drawn(charted, panel, source, n)
     first = None if points.time is None or span.stop == span.start else int(points.time[span.start])
     return LimitsInForce(
         era=era.number,
@@ -266,51 +296,54 @@ def _row(charted: Charted, era: Era, panel: str, span: _Span, facts: _Facts) -> 
         stop_index=span.stop,
         in_force_from=source.from_time if source.from_time is not None else (era.from_time or first),
         centre=_common(lines.centre),
-        sigma=None if charted.kind.attribute else sigma,
+        sigma=None if charted.kind.attribute else source.sigma,
         lower=_common(lines.lower),
         upper=_common(lines.upper),
         varies=not (_same(lines.lower) and _same(lines.upper)),
         n=float(n[0]) if np.ptp(n) == 0 else None,
-        points=line.points if line else (facts.points if learnt else None),
-        baseline_from=line.baseline_from if line else (facts.first if learnt else None),
-        baseline_to=line.baseline_to if line else (facts.last if learnt else None),
-        excluded=line.excluded if line else (facts.excluded if learnt else None),
-        estimator=line.estimator if line else source.estimator,
+        points=source.baseline.points,
+        baseline_from=source.baseline.first,
+        baseline_to=source.baseline.last,
+        excluded=source.baseline.excluded,
+        estimator=source.estimator,
         note=source.note,
-        reason=line.reason if line else "",
-        by=line.by if line else "",
-        adopted_at=line.adopted_at if line else None,
+        reason="" if source.line is None else source.line.reason,
+        by="" if source.line is None else source.line.by,
+        adopted_at=None if source.line is None else source.line.adopted_at,
     )
 
 
-def _median_row(
-    charted: Charted, era: Era, facts: _Facts, stop: int, estimate: Estimate | None
-) -> LimitsInForce:
-    """Return the row of an era that has no limits yet: the median of its points alone."""
+def _row_without_limits(charted: Charted, era: Era, learnt: _Learnt, stop: int) -> LimitsInForce:
+    """Return the row of points that have no limits yet: a centre alone.
+
+    It is the median of the era's points, or the baseline's own centre where that is full but does not vary.
+    """
     panel = next(iter(charted.kind.panels))
     here = slice(era.start_index, era.stop_index)
     known = charted.values[panel][here][charted.usable[here]]
-    note = "too few points"
-    if facts.enough:
-        note = (estimate.finding if estimate else "") or "no variation in the baseline"
+    centre = float(np.median(known)) if known.size else None
+    estimator, note = "median", "too few points"
+    if learnt.enough and learnt.estimate is not None:
+        centre, estimator = learnt.estimate.centre, learnt.estimate.estimator
+        note = learnt.estimate.finding or "no variation in the baseline"
     return LimitsInForce(
         era=era.number,
         panel=panel,
         kind="provisional",
         start_index=era.start_index,
         stop_index=stop,
-        in_force_from=era.from_time or facts.first,
-        centre=float(np.median(known)) if known.size else None,
+        in_force_from=era.from_time or learnt.baseline.first,
+        centre=centre,
         sigma=None,
         lower=None,
         upper=None,
         varies=False,
         n=None,
-        points=facts.points,
-        baseline_from=facts.first,
-        baseline_to=facts.last,
-        excluded=facts.excluded,
-        estimator="median",
+        points=learnt.baseline.points,
+        baseline_from=learnt.baseline.first,
+        baseline_to=learnt.baseline.last,
+        excluded=learnt.baseline.excluded,
+        estimator=estimator,
         note=note,
         reason="",
         by="",
@@ -318,23 +351,31 @@ def _median_row(
     )
 
 
+def _drawn(charted: Charted, panel: str, source: Source, n: Floats) -> Lines:
+    options = charted.settings.chart_options
+    return charted.kind.lines(panel, source.centre, source.sigma, n, width=source.width, options=options)
+
+
 def _lay(charted: Charted, lines: Lines, panel: str, span: _Span) -> None:
     """Write a set's lines over the points it is in force at."""
     if span.stop == span.start:
         return
-    centre, sigma = span.source.parameters[panel]
-    n = charted.points.n[span.start : span.stop]
-    drawn = charted.kind.lines(panel, centre, sigma, n, charted.settings)
-    for name in ("centre", "lower", "upper", "sigma"):
+    drawn = _drawn(charted, panel, span.source, charted.points.n[span.start : span.stop])
+    for name in _LINES:
         getattr(lines, name)[span.start : span.stop] = getattr(drawn, name)
 
 
+def _lay_centre(lines: Lines, row: LimitsInForce) -> None:
+    if row.centre is not None:
+        lines.centre[row.start_index : row.stop_index] = row.centre
+
+
 def _no_lines(points: int) -> Lines:
-    return Lines(**{name: np.full(points, np.nan) for name in ("centre", "lower", "upper", "sigma")})
+    return Lines(**{name: np.full(points, np.nan) for name in _LINES})
 
 
 def _freeze(lines: Lines) -> Lines:
-    for name in ("centre", "lower", "upper", "sigma"):
+    for name in _LINES:
         frozen(getattr(lines, name))
     return lines
 
