@@ -10,6 +10,7 @@ import numpy.typing as npt
 Floats = npt.NDArray[np.float64]
 Ints = npt.NDArray[np.int64]
 Bools = npt.NDArray[np.bool_]
+Sides = npt.NDArray[np.int8]  # -1 below, 1 above, 0 neither
 Array = TypeVar("Array", bound=npt.NDArray[Any])
 
 

@@ -11,7 +11,8 @@ import numpy.typing as npt
 from holdsteady.arrays import Ints
 
 SECOND = 1_000_000
-DAY = 86_400 * SECOND
+HOUR = 3_600 * SECOND
+DAY = 24 * HOUR
 _EPOCH = dt.datetime(1970, 1, 1, tzinfo=dt.UTC)
 _QUARTER_HOUR = 900 * SECOND  # no zone changes its offset within one
 
@@ -36,11 +37,11 @@ def offsets(microseconds: Ints, zone: ZoneInfo) -> Ints:
     if buckets.size == 0:
         return np.zeros(0, dtype=np.int64)
     days, day_of = np.unique(buckets // 96, return_inverse=True)
-    edges = np.array([_offset(int(day) * DAY, zone) for day in np.append(days, days[-1] + 1)])
-    # A day is constant when the offset is the same at both its ends; the others are looked at closely.
+    starts = np.array([_offset(int(day) * DAY, zone) for day in days])
     ends = np.array([_offset((int(day) + 1) * DAY, zone) for day in days])
-    result = edges[:-1][day_of]
-    for index in np.flatnonzero((edges[:-1] != ends)[day_of]):
+    # A day is constant when the offset is the same at both its ends; the others are looked at closely.
+    result = starts[day_of]
+    for index in np.flatnonzero((starts != ends)[day_of]):
         result[index] = _offset(int(buckets[index]) * _QUARTER_HOUR, zone)
     return result[inverse.reshape(-1)]
 
@@ -52,12 +53,22 @@ def wall(microseconds: Ints, zone: ZoneInfo) -> Ints:
 
 def iso(microseconds: Ints, zone: ZoneInfo) -> list[str]:
     """Return ISO 8601 texts with offset; with a fraction only where one of the moments has one."""
-    shift = offsets(microseconds, zone)
-    local: npt.NDArray[np.datetime64] = (microseconds + shift).astype("datetime64[us]")
-    whole = not np.any(microseconds % SECOND)
-    texts = np.datetime_as_string(local, unit="s" if whole else "us").tolist()
-    suffix = {int(s): _suffix(int(s)) for s in np.unique(shift)}
-    return [text + suffix[s] for text, s in zip(texts, shift.tolist(), strict=True)]
+    local, suffixes, suffix_of = iso_parts(microseconds, zone)
+    texts = np.datetime_as_string(local).tolist()
+    return [text + suffixes[code] for text, code in zip(texts, suffix_of.tolist(), strict=True)]
+
+
+def iso_parts(microseconds: Ints, zone: ZoneInfo) -> tuple[npt.NDArray[np.datetime64], list[str], Ints]:
+    """Return what ISO 8601 texts are put together from, for those who write many at once.
+
+    Local moments (N,), to the second where none has a fraction; the distinct offsets, as in '+01:00'; and
+    which of these each moment has (N,).
+    """
+    distinct, code = np.unique(offsets(microseconds, zone), return_inverse=True)
+    code = code.reshape(-1)
+    unit = "us" if np.any(microseconds % SECOND) else "s"
+    local = (microseconds + distinct[code]).astype("datetime64[us]").astype(f"datetime64[{unit}]")
+    return local, [_suffix(int(shift)) for shift in distinct], code
 
 
 def _offset(microseconds: int, zone: ZoneInfo) -> int:

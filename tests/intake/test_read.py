@@ -36,13 +36,22 @@ def test_a_source_without_files_is_a_message(tmp_path: Path) -> None:
     intake = take_in(tmp_path, {"a.csv": "stamp,v\n2025-01-01,1\n"}, two_sources("a.csv", "nothing.csv"))
     assert intake.readings["d"] == ()
     assert len(intake.readings["c"]) == 1
-    assert [(one.severity, one.where) for one in intake.problems] == [(Severity.WARNING, "source.t.files")]
+    (problem,) = intake.problems
+    assert problem.severity is Severity.WARNING
+    assert str(problem) == "holdsteady.toml: source 't': no file matches nothing.csv"
+    (tmp_path / "holdsteady.toml").write_text("[[source]]\nid = 's'\n[[source]]\nfiles = ['nothing.csv']\n")
+    intake = take_in(tmp_path, {}, two_sources("a.csv", "nothing.csv"))
+    assert intake.problems[0].line == 4
 
 
 def test_no_source_with_files_is_an_error(tmp_path: Path) -> None:
     with pytest.raises(SettingsError) as caught:
         take_in(tmp_path, {}, two_sources("a.csv", "b.csv"))
-    assert [one.where for one in caught.value.problems] == ["source.s.files", "source.t.files"]
+    assert [one.what for one in caught.value.problems] == [
+        "source 's': no file matches a.csv",
+        "source 't': no file matches b.csv",
+    ]
+    assert {one.where for one in caught.value.problems} == {"holdsteady.toml"}
     assert caught.value.exit_code == 2
 
 

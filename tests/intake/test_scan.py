@@ -57,9 +57,11 @@ def test_links_stay_inside_the_project(tmp_path: Path) -> None:
     os.mkfifo(project / "pipe.csv")
     intake = take_in(project, {}, settings_of(source={"id": "s", "files": ("**/*.csv",), "time": "stamp"}))
     used = {one.file: one.rows for one in intake.files}
-    assert used == {"data/a.csv": 1, "gone.csv": 0, "inner.csv": 1, "outer.csv": 0, "pipe.csv": 0}
+    assert used == {"data/a.csv": 1, "gone.csv": 0, "inner.csv": 0, "outer.csv": 0, "pipe.csv": 0}
     reasons = {one.file: one.reason for one in intake.set_aside}
-    assert set(reasons) == {"gone.csv", "outer.csv", "pipe.csv"}
+    assert set(reasons) == {"data/loop", "gone.csv", "inner.csv", "outer.csv", "pipe.csv"}
+    assert "lies in" in reasons["data/loop"]
+    assert reasons["inner.csv"] == "a link to data/a.csv, which is read already"
     assert "out of the project" in reasons["outer.csv"]
     assert "not a regular file" in reasons["pipe.csv"]
 

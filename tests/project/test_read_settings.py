@@ -34,6 +34,8 @@ delimiter = ";"
 decimal = ","
 time_format = "%d.%m.%Y %H:%M:%S"
 missing = ["-999", "n/a"]
+key = ["stamp", "serial"]
+newest = "modified"
 
 [[characteristic]]
 id = "bore"
@@ -271,16 +273,11 @@ SAMPLES = {
     "accent": "accent = '#1f5f95'",
     "watch": "watch = 'poll'",
     "show_people": "show_people = false",
-    "encoding": "encoding = 'cp1252'",
-    "time": "time = ['date', 'clock']",
-    "key": "key = ['stamp']",
-    "newest": "newest = 'path'",
     "settle": "settle = '2s'",
     "variables": "variables = ['a', 'b']",
     "limits_by": "limits_by = 'probability'",
     "false_alarm": "false_alarm = 0.0027",
     "width": "width = 'guaranteed'",
-    "censored": "censored = 'at-limit'",
     "capability": "capability = { model = 'lognormal' }",
     "natural_limit": "natural_limit = 0",
     "strata": "strata = ['operator']",

@@ -61,7 +61,9 @@ class Timing:
         """Say why a stamp could not be read."""
         if self.family in AMBIGUOUS and day_first is None:
             return "day and month cannot be told apart; set `time_format` of its source"
-        return f"no time in this file's format ({self.format})" if self.format else "no time that can be read"
+        if not self.format:
+            return "no time that can be read; set `time_format` of its source"
+        return f"no time in this file's format ({self.format})"
 
 
 def timing(stamps: Stamps, judgement: Judgement, clock: Clock, given: str | None) -> Timing:

@@ -15,6 +15,7 @@ EARLIEST = (
     int((dt.datetime(1900, 1, 1, tzinfo=dt.UTC) - dt.datetime(1970, 1, 1, tzinfo=dt.UTC)).total_seconds())
     * 1_000_000
 )
+_MOST_DAYS = 400
 _UTC_NAMES = ("UTC", "Etc/UTC", "Z", "Zulu", "Etc/Zulu", "Universal", "Etc/Universal")
 
 
@@ -49,6 +50,16 @@ class Clock:
         if near.size:
             result[near] = self._through_change(stamps, near, before[near], after[near])
         return result
+
+    def only_offset(self, first: int, last: int) -> int | None:
+        """Return the offset that holds for all local times from `first` to `last`; None where it changes."""
+        if self.zone.key in _UTC_NAMES:
+            return 0
+        days = range(first // DAY - 1, last // DAY + 3)
+        if len(days) > _MOST_DAYS:
+            return None
+        offset = self._offset(days[0])
+        return offset if all(self._offset(day) == offset for day in days) else None
 
     def _offsets_around(self, stamps: Ints) -> tuple[Ints, Ints]:
         days = stamps // DAY

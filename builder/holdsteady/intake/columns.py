@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from typing import Any
 
 import numpy as np
 import numpy.typing as npt
@@ -10,6 +11,8 @@ import pyarrow as pa
 import pyarrow.compute as pc
 
 from holdsteady.arrays import Bools, Floats, Ints
+
+Codes = npt.NDArray[np.signedinteger[Any]]
 
 
 def whole(column: pa.Array | pa.ChunkedArray) -> pa.Array:
@@ -19,6 +22,11 @@ def whole(column: pa.Array | pa.ChunkedArray) -> pa.Array:
     if pa.types.is_dictionary(column.type):
         column = column.unify_dictionaries()
     return column.combine_chunks() if column.num_chunks != 1 else column.chunk(0)
+
+
+def integers(column: pa.Array) -> Ints:
+    """Return a column of moments or whole numbers without nulls as it is held, (N,)."""
+    return np.asarray(np.from_dlpack(column.view(pa.int64())), dtype=np.int64)
 
 
 def strings(cells: Sequence[str]) -> pa.StringArray:
@@ -38,15 +46,29 @@ def flags(column: pa.Array) -> Bools:
     return np.from_dlpack(filled.cast(pa.uint8())).astype(np.bool_)
 
 
-def codes(column: pa.DictionaryArray) -> tuple[Ints, list[str]]:
-    """Return a dictionary column as codes, (N,), into its trimmed categories, each of which stands once."""
-    raw = np.from_dlpack(column.indices).astype(np.int64)
-    texts = [text.strip() for text in column.dictionary.to_pylist()]
-    if len(texts) == 0:
-        return raw, []
-    distinct = list(dict.fromkeys(texts))
-    place = {text: index for index, text in enumerate(distinct)}
-    return np.array([place[text] for text in texts], dtype=np.int64)[raw], distinct
+def joined_codes(columns: Sequence[pa.DictionaryArray | int]) -> tuple[Codes, list[str]]:
+    """Return dictionary columns, one after the other, as codes, (N,), into their trimmed categories.
+
+    Each category stands once. A count stands for as many rows without the column: their code is -1.
+    The codes are of the smallest type that holds them, because sorting by two bytes is a matter of two
+    passes.
+    """
+    place: dict[str, int] = {}
+    tables = []
+    for column in columns:
+        texts = () if isinstance(column, int) else column.dictionary.to_pylist()
+        tables.append([place.setdefault(text.strip(), len(place)) for text in texts])
+    kind: type[np.signedinteger[Any]] = np.int16 if len(place) < 2**15 else np.int32
+    sizes = [column if isinstance(column, int) else len(column) for column in columns]
+    result = np.full(sum(sizes), -1, dtype=kind)
+    start = 0
+    for column, table, size in zip(columns, tables, sizes, strict=True):
+        if size and not isinstance(column, int):
+            places = np.array(table, dtype=kind)
+            codes: npt.NDArray[np.int32] = np.asarray(np.from_dlpack(column.indices), dtype=np.int32)
+            np.take(places, codes, out=result[start : start + size], mode="clip")
+        start += size
+    return result, list(place)
 
 
 def encoded(cells: pa.StringArray) -> pa.DictionaryArray:

@@ -33,7 +33,10 @@ class Ask:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Demand:
-    """Everything asked of one source."""
+    """Everything asked of one source.
+
+    `labels` are read as text; a column of `key` that nobody else asks for is one of them.
+    """
 
     source: Source
     asks: tuple[Ask, ...]
@@ -41,20 +44,29 @@ class Demand:
     labels: tuple[str, ...]
 
     @property
+    def stamps(self) -> tuple[str, ...]:
+        """The columns that give a row its time: none, one, or date and clock."""
+        time = self.source.time
+        return (time,) if isinstance(time, str) else time or ()
+
+    @property
     def columns(self) -> tuple[str, ...]:
         """All columns, the time first, each once."""
-        first = () if self.source.time is None else (self.source.time,)
-        return tuple(dict.fromkeys((*first, *self.numbers, *self.labels)))
+        return tuple(dict.fromkeys((*self.stamps, *self.numbers, *self.labels)))
 
 
 def demand_of(source: Source, settings: Settings) -> Demand:
     """Gather what the characteristics of a source ask of it."""
     asks = tuple(_ask(one) for one in settings.characteristic if one.source == source.id)
+    numbers = tuple(dict.fromkeys(name for ask in asks for name in ask.numbers))
+    stamps = (source.time,) if isinstance(source.time, str) else source.time or ()
+    stamped = stamps if set(stamps) <= set(source.key) else ()  # half a time is compared as text
+    key = (name for name in source.key if name not in (*stamped, *numbers))
     return Demand(
         source=source,
         asks=asks,
-        numbers=tuple(dict.fromkeys(name for ask in asks for name in ask.numbers)),
-        labels=tuple(dict.fromkeys(name for ask in asks for name in ask.labels)),
+        numbers=numbers,
+        labels=tuple(dict.fromkeys((*(name for ask in asks for name in ask.labels), *key))),
     )
 
 

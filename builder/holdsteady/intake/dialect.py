@@ -1,4 +1,4 @@
-"""What a file's bytes say about how it is written: text or not, delimiter, header, decimal mark."""
+"""What a file's text says about how it is written: delimiter, header, decimal mark."""
 
 from __future__ import annotations
 
@@ -10,25 +10,17 @@ from itertools import islice
 from holdsteady.intake.demand import Demand
 from holdsteady.intake.lines import QUOTE, Quoting, physical_lines, split_cells
 from holdsteady.intake.numbers import MarkEvidence, evidence
+from holdsteady.intake.scale import scale_of
 
 DELIMITERS = (",", ";", "\t", "|")
 _SAMPLE = 65_536
+_LARGER = 16  # times, while the header is not in it
+_LARGEST_SAMPLE = 1 << 26
 _DEEPEST_HEADER = 1_000
 _MOST_HEADER_LINES = 5
 _COMPARED = 50
 _FIRST_ROWS_FOR_MARK = 20
 _ROWS_FOR_MARK = 200
-_SIGNATURES = (
-    (b"PK\x03\x04", "a spreadsheet or archive; save the sheet as CSV"),
-    (b"\xd0\xcf\x11\xe0", "a spreadsheet; save the sheet as CSV"),
-    (b"\x89PNG", "a picture; take it out of `files`"),
-    (b"\xff\xd8\xff", "a picture; take it out of `files`"),
-    (b"GIF8", "a picture; take it out of `files`"),
-    (b"%PDF", "a PDF; export the data as CSV"),
-    (b"\x1f\x8b", "compressed, which is not supported yet; unpack it"),
-    (b"\xff\xfe", "UTF-16 text, which is not supported yet; save it as UTF-8"),
-    (b"\xfe\xff", "UTF-16 text, which is not supported yet; save it as UTF-8"),
-)
 _LINE_END = re.compile(r"\r\n|\n|\r")
 
 
@@ -62,37 +54,6 @@ class Layout:
         return f"column '{column}' stands twice" if column in self.twice else ""
 
 
-def text_trouble(data: bytes) -> str:
-    """Return why the bytes are not UTF-8 text, with what to do about it, or an empty text."""
-    for signature, reason in _SIGNATURES:
-        if data.startswith(signature):
-            return reason
-    head = data[:64]
-    if head.count(0) * 4 >= max(len(head), 1):
-        return "not text: NUL bytes; if it is UTF-16, save it as UTF-8"
-    if data.isascii():
-        return ""
-    try:
-        data.decode("utf-8")
-    except UnicodeDecodeError as error:
-        line = len(re.findall(rb"\r\n|\n|\r", data[: error.start])) + 1
-        return f"not UTF-8 text (byte 0x{data[error.start]:02X} in line {line}); save it as UTF-8"
-    return ""
-
-
-def without_cut_character(data: bytes) -> bytes:
-    """Return the bytes with a character that the end of the file cuts in two replaced by U+FFFD."""
-    if data[-4:].isascii():
-        return data
-    decoder = codecs.getincrementaldecoder("utf-8")()
-    try:
-        decoder.decode(data[-4:].lstrip(bytes(range(0x80, 0xC0))))
-    except UnicodeDecodeError:
-        return data
-    pending = decoder.getstate()[0]
-    return data[: len(data) - len(pending)] + "\ufffd".encode() if pending else data
-
-
 def detect(data: bytes, demand: Demand) -> Layout | None:
     """Find header, delimiter and decimal mark; None where there is no line with text.
 
@@ -100,17 +61,22 @@ def detect(data: bytes, demand: Demand) -> Layout | None:
     holds the most of them; failing that the first line that has more than one field.
     """
     start = len(codecs.BOM_UTF8) if data.startswith(codecs.BOM_UTF8) else 0
-    sample = _sample(data, start)
-    lines, _ = physical_lines(sample)
-    candidates = _candidates(demand)
-    header = _header(lines, demand.columns, candidates)
+    wanted = demand.columns
+    size = _SAMPLE
+    while True:
+        sample = _sample(data, start, size)
+        lines, _ = physical_lines(sample)
+        header = _header(lines, wanted, _candidates(demand))
+        complete = header is not None and set(wanted) <= set(header.names)
+        if complete or len(lines) >= _DEEPEST_HEADER or size >= min(len(data), _LARGEST_SAMPLE):
+            break
+        size *= _LARGER
     if header is None:
         return None
     names = header.names
-    wanted = demand.columns
     position = {name: names.index(name) for name in wanted if names.count(name) == 1}
     body = lines[header.last + 1 : header.last + 1 + _ROWS_FOR_MARK]
-    offset = start + len(sample[: _end_of_line(sample, header.last)].encode())
+    offset = _at_line(data, start + len(sample[: _end_of_line(sample, header.last)].encode()))
     return Layout(
         delimiter=header.delimiter,
         header_line=header.last + 1,
@@ -119,7 +85,7 @@ def detect(data: bytes, demand: Demand) -> Layout | None:
         position=position,
         missing=tuple(name for name in wanted if name not in names),
         twice=tuple(name for name in wanted if names.count(name) > 1),
-        marks=_marks(body, header.delimiter, [position[name] for name in demand.numbers if name in position]),
+        marks=_marks(body, header.delimiter, position, demand),
     )
 
 
@@ -130,11 +96,12 @@ class _Header:
     names: list[str]
 
 
-def _sample(data: bytes, start: int) -> str:
-    piece = data[start : start + _SAMPLE]
-    if len(data) - start > _SAMPLE:
-        end = piece.rfind(b"\n")
-        piece = piece[: end + 1] if end >= 0 else data[start:]
+def _sample(data: bytes, start: int, size: int) -> str:
+    """Return the first lines of a text, whole ones where the first line is not longer than the sample."""
+    piece = data[start : start + size]
+    if len(data) - start > size:
+        end = max(piece.rfind(b"\n"), piece.rfind(b"\r", 0, -1))
+        piece = piece[: end + 1] if end >= 0 else piece
     return piece.decode("utf-8", "replace")
 
 
@@ -142,6 +109,15 @@ def _end_of_line(sample: str, index: int) -> int:
     """Return the place at which the line after the one of this index begins."""
     end = next(islice(_LINE_END.finditer(sample), index, None), None)
     return len(sample) if end is None else end.end()
+
+
+def _at_line(data: bytes, offset: int) -> int:
+    """Return where the next line begins, for a header that is longer than any sample."""
+    if data[offset - 1 : offset] in (b"\n", b"\r", b""):
+        return offset
+    ends = [end for end in (data.find(b"\n", offset), data.find(b"\r", offset)) if end >= 0]
+    end = min(ends, default=len(data))
+    return min(end + (2 if data[end : end + 2] == b"\r\n" else 1), len(data))
 
 
 def _candidates(demand: Demand) -> tuple[str, ...]:
@@ -210,15 +186,14 @@ def _alike(lines: list[str], header: _Header) -> int:
     return sum(len(split_cells(line, header.delimiter)[0]) == len(header.names) for line in below)
 
 
-def _marks(body: list[str], delimiter: str, positions: list[int]) -> MarkEvidence:
+def _marks(body: list[str], delimiter: str, position: dict[str, int], demand: Demand) -> MarkEvidence:
     """Look at a few rows, and at more of them while they prove nothing."""
     found = MarkEvidence()
-    for rows in (body[:_FIRST_ROWS_FOR_MARK], body[_FIRST_ROWS_FOR_MARK:]):
-        cells = []
-        for line in rows:
-            row, _ = split_cells(line, delimiter)
-            cells += [row[position] for position in positions if position < len(row)]
-        found += evidence(cell.strip() for cell in cells)
+    places = [(position[one], scale_of(one, demand)) for one in demand.numbers if one in position]
+    for lines in (body[:_FIRST_ROWS_FOR_MARK], body[_FIRST_ROWS_FOR_MARK:]):
+        rows = [split_cells(line, delimiter)[0] for line in lines]
+        for place, scale in places:
+            found += evidence((row[place].strip() for row in rows if place < len(row)), scale)
         if found.dot or found.comma:
             break
     return found

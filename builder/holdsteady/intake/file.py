@@ -3,16 +3,20 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
+import pyarrow as pa
 
 from holdsteady.intake import careful, fast
+from holdsteady.intake.alike import Layouts
 from holdsteady.intake.block import ROW, Block, Judgement
 from holdsteady.intake.clock import Clock
+from holdsteady.intake.content import Content, load, load_again
 from holdsteady.intake.demand import Demand
-from holdsteady.intake.dialect import Layout, detect, text_trouble, without_cut_character
-from holdsteady.intake.lines import physical_lines, split_cells
+from holdsteady.intake.dialect import Layout
+from holdsteady.intake.example import first_row
+from holdsteady.intake.lines import split_cells, texts_of_lines
 from holdsteady.intake.numbers import Mark, MarkEvidence, choose_mark
 from holdsteady.intake.readings import SetAside
 from holdsteady.intake.scan import Found
@@ -24,10 +28,13 @@ class Opened:
 
     found: Found
     size: int = 0
+    digest: int = 0
+    encoding: str = ""
     layout: Layout | None = None
     table: fast.Table | None = None
     records: careful.Records | None = None
     trouble: str = ""
+    first: str = ""  # the line below the header
 
     @property
     def marks(self) -> MarkEvidence:
@@ -43,30 +50,45 @@ class Closed:
 
     found: Found
     size: int
+    digest: int = 0
+    encoding: str = ""
     layout: Layout | None = None
     block: Block | None = None
     rows_aside: Sequence[SetAside] = ()
     trouble: str = ""
+    first: str = ""  # the line below the header
 
 
-def open_file(found: Found, demand: Demand, *, hasty: bool = True) -> Opened:
-    """Read a file for the first time; `hasty` says whether the fast way may be tried."""
+def open_file(found: Found, demand: Demand, *, layouts: Layouts | None = None, hasty: bool = True) -> Opened:
+    """Read a file for the first time; `hasty` says whether the fast way may be tried.
+
+    `layouts` knows how the files of the source seen before are laid out.
+    """
     if found.trouble:
         return Opened(found=found, trouble=found.trouble)
     try:
-        raw = found.path.read_bytes()
-    except OSError as error:
-        reason = f"cannot be read: {error.strerror or error}; see to its permissions"
-        return Opened(found=found, trouble=reason)
-    data = without_cut_character(raw)
-    trouble = text_trouble(data)
-    layout = None if trouble else detect(data, demand)
+        content = load(found.path, demand.source.encoding)
+        return _parsed(found, content, demand, layouts or Layouts(demand), hasty=hasty)
+    except (MemoryError, pa.ArrowException) as error:  # a line or a file beyond what can be held
+        return Opened(found=found, trouble=f"cannot be read: {str(error) or 'it needs too much memory'}")
+
+
+def _parsed(found: Found, content: Content, demand: Demand, layouts: Layouts, *, hasty: bool) -> Opened:
+    layout = None if content.trouble else layouts.of(content.text)
+    opened = Opened(
+        found=found,
+        size=content.size,
+        digest=content.digest,
+        encoding=content.encoding,
+        layout=layout,
+        trouble=content.trouble,
+    )
     if layout is None:
-        return Opened(found=found, size=len(raw), trouble=trouble)
+        return opened
     mark = demand.source.decimal or choose_mark(layout.marks, layout.marks, layout.delimiter)
-    table = fast.read(data, layout, demand, mark) if hasty else None
-    records = careful.read(data, found.name, layout, demand) if table is None else None
-    return Opened(found=found, size=len(raw), layout=layout, table=table, records=records)
+    table = fast.read(content.text, layout, demand, mark) if hasty and mark is not None else None
+    records = careful.read(content.text, found.name, layout, demand) if table is None else None
+    return replace(opened, table=table, records=records, first=first_row(content.text, layout))
 
 
 def judge(files: Iterable[Opened]) -> Judgement:
@@ -90,23 +112,33 @@ def close_file(opened: Opened, judgement: Judgement, demand: Demand, clock: Cloc
         mark = demand.source.decimal or choose_mark(layout.marks, judgement.marks, layout.delimiter)
         table: fast.Table | None = opened.table
         if mark != opened.table.decimal:
-            table = _again(opened, layout, demand, mark)
+            table = None if mark is None else _again(opened, layout, demand, mark)
         block = None if table is None else fast.finish(table, judgement, demand, clock)
         if block is not None:
-            return Closed(found=opened.found, size=opened.size, layout=layout, block=block)
+            return replace(_closed(opened), block=block, first=opened.first)
         opened = open_file(opened.found, demand, hasty=False)
     if opened.records is None:
-        return Closed(found=opened.found, size=opened.size, layout=opened.layout, trouble=opened.trouble)
+        return _closed(opened)
     block, aside = careful.finish(opened.records, judgement, demand, clock)
-    return Closed(found=opened.found, size=opened.size, layout=opened.layout, block=block, rows_aside=aside)
+    return replace(_closed(opened), block=block, rows_aside=aside)
+
+
+def _closed(opened: Opened) -> Closed:
+    """Return a file without any row."""
+    return Closed(
+        found=opened.found,
+        size=opened.size,
+        digest=opened.digest,
+        encoding=opened.encoding,
+        layout=opened.layout,
+        trouble=opened.trouble,
+    )
 
 
 def _again(opened: Opened, layout: Layout, demand: Demand, mark: Mark) -> fast.Table | None:
-    try:
-        raw = opened.found.path.read_bytes()
-    except OSError:
-        return None
-    return fast.read(without_cut_character(raw), layout, demand, mark) if len(raw) == opened.size else None
+    encoding = demand.source.encoding
+    content = load_again(opened.found.path, encoding, size=opened.size, digest=opened.digest)
+    return None if content is None else fast.read(content.text, layout, demand, mark)
 
 
 def texts_of(closed: Closed, places: Sequence[tuple[int, str]]) -> list[str]:
@@ -123,16 +155,16 @@ def texts_of(closed: Closed, places: Sequence[tuple[int, str]]) -> list[str]:
 
 
 def _texts_in_lines(closed: Closed, layout: Layout, places: Sequence[tuple[int, str]]) -> list[str]:
-    try:
-        lines, _ = physical_lines(closed.found.path.read_bytes().decode("utf-8", "replace"))
-    except OSError:
+    content = load_again(closed.found.path, closed.encoding, size=closed.size, digest=closed.digest)
+    if content is None:
         return [""] * len(places)
     result = []
-    for line, column in places:
-        text = lines[line - 1] if line <= len(lines) else ""
-        if column != ROW:
+    lines = texts_of_lines(content.text, [line for line, _ in places])
+    for text, (_, column) in zip(lines, places, strict=True):
+        if column == ROW:
+            result.append(text)
+        else:
             cells, _ = split_cells(text, layout.delimiter)
             place = layout.position[column]
-            text = cells[place].strip() if place < len(cells) else ""
-        result.append(text)
+            result.append(cells[place].strip() if place < len(cells) else "")
     return result

@@ -1,11 +1,24 @@
-"""Whether the last line of a file, having no end, is only half a line."""
+"""What the end of a file shows: a line that is only half a line, or totals."""
 
 from __future__ import annotations
 
 import re
-from collections.abc import Iterable
+from collections.abc import Iterable, Sequence
 
 _NUMBER = re.compile(r"[+-]?[0-9]*(?:[.,]([0-9]*))?(?:[eE][+-]?[0-9]*)?")
+
+_TOTALS = frozenset(
+    (
+        *("total", "totals", "sum", "mean", "average", "avg", "min", "minimum", "max", "maximum", "median"),
+        *("std", "stdev", "summe", "gesamt", "mittelwert", "somme", "moyenne", "suma", "soma", "média"),
+    )
+)
+
+
+def is_total(cells: Sequence[str]) -> bool:
+    """Whether a row's first filled cell is a word for totals: `Total`, `Mean:`."""
+    first = next((cell.strip() for cell in cells if cell.strip()), "")
+    return first.rstrip(":").rstrip().casefold() in _TOTALS
 
 
 def is_cut(last: str, others: Iterable[str], *, timed: bool) -> bool:

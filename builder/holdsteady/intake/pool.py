@@ -1,19 +1,25 @@
-"""All usable rows of a source in one order, and quick ways to find those that carry given labels."""
+"""All usable rows of a source, and quick ways to find those that carry given labels."""
 
 from __future__ import annotations
 
+import threading
+from collections import Counter
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 
 import numpy as np
-import pyarrow as pa
 
-from holdsteady.arrays import Bools, Ints
+from holdsteady.arrays import Bools, Floats, Ints
 from holdsteady.intake.block import Block
-from holdsteady.intake.columns import codes, whole
+from holdsteady.intake.columns import Codes, joined_codes
 from holdsteady.intake.demand import Demand
 from holdsteady.intake.file import Closed
-from holdsteady.intake.numbers import Numbers, State
+from holdsteady.intake.ground import Ground
+from holdsteady.intake.groups import Groups, group
+from holdsteady.intake.numbers import Numbers, State, States
+from holdsteady.intake.selection import Selection, select
+
+_FEW = 3  # settings of `where` for which grouping all rows is too much
 
 Setting = str | int | float | bool
 
@@ -22,37 +28,125 @@ Setting = str | int | float | bool
 class Labels:
     """A column of text: codes, (N,), into `categories`; -1 where the file lacks the column."""
 
-    codes: Ints
+    codes: Codes
     categories: Sequence[str]
 
 
 @dataclass(slots=True, kw_only=True)
 class Pool:
-    """N rows of F files, ordered by time, file and line.
+    """N rows of F files, in the order of files and lines.
 
-    `file`, `line`, `time` are (N,); `has` says for each column which files have it, (F,).
+    `ground` is how they lie; `has` says for each column which files have it, (F,). `kept` are the rows,
+    (N,), that are no repetition of others; None for all. Several threads may ask it at once.
     """
 
     files: tuple[str, ...]
-    file: Ints
-    line: Ints
-    time: Ints | None
-    numbers: dict[str, Numbers]
-    labels: dict[str, Labels]
-    has: dict[str, Bools]
+    ground: Ground
+    blocks: Sequence[Block | None]
+    labels: Mapping[str, Labels]
+    has: Mapping[str, Bools]
+    asked: Mapping[tuple[str, ...], int]  # how many different settings `where` names these columns with
+    kept: Bools | None = None
+    _scratch: threading.local = field(default_factory=threading.local)
+    _lock: threading.Lock = field(default_factory=threading.Lock)
+    _clean: dict[str, bool] = field(default_factory=dict)
+    _states: dict[str, States] = field(default_factory=dict)
     _groups: dict[tuple[str, ...], Groups] = field(default_factory=dict)
     _places: dict[str, dict[str, int]] = field(default_factory=dict)
+    _selections: dict[object, Selection] = field(default_factory=dict)
 
     @property
     def size(self) -> int:
         """How many rows there are."""
-        return self.line.size
+        return self.ground.size
+
+    def selected(self, name: str, chosen: Selection) -> Floats:
+        """Return the selected cells, (R,), of a column of numbers, NaN where there is none."""
+        found = chosen.of_pieces(self._pieces(name))
+        return chosen.of(self.values(name)) if found is None else found
+
+    def values(self, name: str) -> Floats:
+        """Return a column of numbers, (N,), NaN where there is none; it stands until the next is asked for.
+
+        One piece of memory serves all columns that a thread asks for, one after the other: fresh memory
+        costs more than the copy.
+        """
+        held: dict[str, Floats] = self._scratch.__dict__
+        if name not in held:
+            values = held.popitem()[1] if held else np.empty(self.size)
+            np.concatenate([np.empty(0), *self._pieces(name)], out=values)
+            held[name] = values
+        return held[name]
+
+    def states(self, name: str) -> States:
+        """Return what the cells of a column are, (N,)."""
+        if name not in self._states:
+            absent = np.uint8(State.ABSENT)
+            pieces = [
+                np.broadcast_to(absent, size) if numbers is None else numbers.state
+                for numbers, size in self._numbers(name)
+            ]
+            self._states[name] = np.concatenate([np.empty(0, dtype=np.uint8), *pieces])
+        return self._states[name]
+
+    def bounds(self, name: str) -> tuple[float, float]:
+        """Return the lowest and the highest number of a column that has no other cells."""
+        pieces = [piece for piece in self._pieces(name) if piece.size]
+        return (
+            min((float(piece.min()) for piece in pieces), default=np.inf),
+            max((float(piece.max()) for piece in pieces), default=-np.inf),
+        )
+
+    def _pieces(self, name: str) -> list[Floats]:
+        return [
+            np.broadcast_to(np.nan, size) if numbers is None else numbers.values
+            for numbers, size in self._numbers(name)
+        ]
+
+    def is_clean(self, name: str) -> bool:
+        """Whether every cell of a column is known to be a number."""
+        if name not in self._clean:
+            filled = [numbers for numbers, size in self._numbers(name) if size]
+            self._clean[name] = all(one is not None and not one.state.any() for one in filled)
+        return self._clean[name]
+
+    def _numbers(self, name: str) -> list[tuple[Numbers | None, int]]:
+        return [
+            (None, 0) if block is None else (block.numbers.get(name), block.line.size)
+            for block in self.blocks
+        ]
+
+    def selection(self, where: Mapping[str, Setting], each: Sequence[str]) -> Selection:
+        """Return the rows whose labels are those of the settings, one member of `each` after the other."""
+        key = (frozenset((name, type(value), value) for name, value in where.items()), tuple(each))
+        with self._lock:
+            if key not in self._selections:
+                self._selections[key] = self._select(where, tuple(each))
+            return self._selections[key]
+
+    def _select(self, where: Mapping[str, Setting], each: tuple[str, ...]) -> Selection:
+        rows = self.rows_where(where)
+        named: list[dict[str, str]] = [{}]
+        groups = None
+        if each:
+            whole = rows.size == self.size
+            groups = group([_of(self.labels[name].codes, rows, whole=whole) for name in each])
+            named = [
+                {
+                    name: self.labels[name].categories[code] if code >= 0 else ""
+                    for name, code in zip(each, key, strict=True)
+                }
+                for key in groups.keys.tolist()
+            ]
+        return select(rows, named, groups, self.ground)
 
     def rows_where(self, where: Mapping[str, Setting]) -> Ints:
         """Return the rows, ascending, whose labels are those of the settings."""
         if not where:
-            return np.arange(self.size)
+            return np.arange(self.size) if self.kept is None else np.flatnonzero(self.kept)
         names = tuple(sorted(where))
+        if self.asked.get(names, 0) <= _FEW:
+            return self._looked_up(where)
         if names not in self._groups:
             self._groups[names] = group([self.labels[name].codes for name in names])
         groups = self._groups[names]
@@ -60,9 +154,17 @@ class Pool:
         for place, name in enumerate(names):
             wanted &= np.isin(groups.keys[:, place], self._matching(name, where[name]))
         found = [groups.rows(int(index)) for index in np.flatnonzero(wanted)]
-        if len(found) == 1:
-            return found[0]
-        return np.sort(np.concatenate([np.zeros(0, dtype=np.int64), *found]))
+        rows = found[0] if len(found) == 1 else np.sort(np.concatenate([np.zeros(0, dtype=np.int64), *found]))
+        return rows if self.kept is None else rows[self.kept[rows]]
+
+    def _looked_up(self, where: Mapping[str, Setting]) -> Ints:
+        wanted = np.ones(self.size, dtype=np.bool_) if self.kept is None else self.kept.copy()
+        for name, setting in where.items():
+            labels = self.labels[name]
+            matches = np.zeros(len(labels.categories) + 1, dtype=np.bool_)
+            matches[[at for at in self._matching(name, setting) if at < len(labels.categories)]] = True
+            wanted &= matches[labels.codes]  # a code of -1 is the last, which nothing matches
+        return np.flatnonzero(wanted)
 
     def _matching(self, name: str, setting: Setting) -> list[int]:
         categories = self.labels[name].categories
@@ -75,46 +177,8 @@ class Pool:
         return [at for at, text in enumerate(categories) if _equals(text, setting)]
 
 
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Groups:
-    """G groups of rows that share their codes: keys (G, columns), and the rows of each, ascending."""
-
-    keys: Ints
-    order: Ints
-    starts: Ints
-
-    def rows(self, index: int) -> Ints:
-        """Return the rows of one group."""
-        return self.order[self.starts[index] : self.starts[index + 1]]
-
-
-def group(columns: Sequence[Ints]) -> Groups:
-    """Group rows by the codes they carry in one or several columns."""
-    dense, keys = _dense(columns[0])
-    for column in columns[1:]:
-        inner, inner_keys = _dense(column)
-        both, both_keys = _dense(dense * inner_keys.shape[0] + inner)
-        pairs = both_keys[:, 0]
-        keys = np.column_stack((keys[pairs // inner_keys.shape[0]], inner_keys[pairs % inner_keys.shape[0]]))
-        dense = both
-    small = (
-        dense.astype(np.uint16) if keys.shape[0] < 2**16 else dense
-    )  # sorted by radix, several times faster
-    starts = np.concatenate(([0], np.cumsum(np.bincount(dense, minlength=keys.shape[0]))))
-    return Groups(keys=keys, order=np.argsort(small, kind="stable"), starts=starts.astype(np.int64))
-
-
-def _dense(column: Ints) -> tuple[Ints, Ints]:
-    """Return codes from 0 without holes, and the code, (G, 1), that each stands for."""
-    if column.size == 0:
-        return column, np.zeros((0, 1), dtype=np.int64)
-    lowest, highest = int(column.min()), int(column.max())
-    if highest - lowest > 8 * column.size + 1_000:
-        keys, dense = np.unique(column, return_inverse=True)
-        return dense.reshape(-1).astype(np.int64), keys[:, None]
-    present = np.bincount(column - lowest, minlength=highest - lowest + 1) > 0
-    keys = np.flatnonzero(present) + lowest
-    return (np.cumsum(present) - 1)[column - lowest], keys[:, None]
+def _of(codes: Codes, rows: Ints, *, whole: bool) -> Codes:
+    return codes if whole else codes[rows]
 
 
 def _equals(text: str, number: float) -> bool:
@@ -126,43 +190,27 @@ def _equals(text: str, number: float) -> bool:
 
 def gather(files: Sequence[Closed], demand: Demand) -> Pool:
     """Put the rows of a source's files, given in the order of their paths, into one pool."""
-    blocks = [(index, one.block) for index, one in enumerate(files) if one.block is not None]
-    sizes = [block.line.size for _, block in blocks]
-    pool = Pool(
+    blocks = [one.block for one in files]
+    none = np.zeros(0, dtype=np.int64)
+    sizes = np.array([0 if block is None else block.line.size for block in blocks], dtype=np.int64)
+    there = [block for block in blocks if block is not None]
+    wheres = {tuple(sorted(ask.characteristic.where.items())) for ask in demand.asks}
+    return Pool(
         files=tuple(one.found.name for one in files),
-        file=np.repeat(np.array([index for index, _ in blocks], dtype=np.int64), sizes),
-        line=_joined([block.line for _, block in blocks]),
-        time=None if demand.source.time is None else _joined([_time(block) for _, block in blocks]),
-        numbers={name: _numbers(name, blocks) for name in demand.numbers},
-        labels={name: _labels(name, blocks) for name in demand.labels},
+        ground=Ground(
+            starts=np.concatenate((np.zeros(1, dtype=np.int64), np.cumsum(sizes))),
+            lines=[none if block is None else block.line for block in blocks],
+            times=[none if block is None else _time(block) for block in blocks] if demand.stamps else None,
+        ),
+        blocks=blocks,
+        labels={name: _labels(name, there) for name in demand.labels},
         has={
             name: np.array(
                 [one.layout is not None and name in one.layout.position for one in files], dtype=np.bool_
             )
             for name in (*demand.numbers, *demand.labels)
         },
-    )
-    return pool if pool.time is None else _in_order(pool, pool.time)
-
-
-def _in_order(pool: Pool, time: Ints) -> Pool:
-    if bool((np.diff(time) >= 0).all()):
-        return pool
-    order = np.argsort(time, kind="stable")
-    return Pool(
-        files=pool.files,
-        file=pool.file[order],
-        line=pool.line[order],
-        time=time[order],
-        numbers={
-            name: Numbers(values=one.values[order], state=one.state[order])
-            for name, one in pool.numbers.items()
-        },
-        labels={
-            name: Labels(codes=one.codes[order], categories=one.categories)
-            for name, one in pool.labels.items()
-        },
-        has=pool.has,
+        asked=Counter(tuple(name for name, _ in where) for where in wheres),
     )
 
 
@@ -170,28 +218,6 @@ def _time(block: Block) -> Ints:
     return np.zeros(block.line.size, dtype=np.int64) if block.time is None else block.time
 
 
-def _joined(arrays: list[Ints]) -> Ints:
-    return np.concatenate([np.zeros(0, dtype=np.int64), *arrays])
-
-
-def _numbers(name: str, blocks: Sequence[tuple[int, Block]]) -> Numbers:
-    values, states = [np.zeros(0)], [np.zeros(0, dtype=np.uint8)]
-    for _, block in blocks:
-        column = block.numbers.get(name)
-        rows = block.line.size
-        values.append(np.full(rows, np.nan) if column is None else column.values)
-        states.append(np.full(rows, State.ABSENT, dtype=np.uint8) if column is None else column.state)
-    return Numbers(values=np.concatenate(values), state=np.concatenate(states))
-
-
-def _labels(name: str, blocks: Sequence[tuple[int, Block]]) -> Labels:
-    chunks = [block.labels[name] for _, block in blocks if name in block.labels]
-    if not chunks:
-        return Labels(codes=np.full(sum(block.line.size for _, block in blocks), -1), categories=())
-    joined, categories = codes(whole(pa.chunked_array(chunks)))
-    if len(chunks) == len(blocks):
-        return Labels(codes=joined, categories=categories)
-    there = np.concatenate([np.full(block.line.size, name in block.labels) for _, block in blocks])
-    result = np.full(there.size, -1, dtype=np.int64)
-    result[there] = joined
-    return Labels(codes=result, categories=categories)
+def _labels(name: str, blocks: Sequence[Block]) -> Labels:
+    codes, categories = joined_codes([block.labels.get(name, block.line.size) for block in blocks])
+    return Labels(codes=codes, categories=categories)

@@ -3,23 +3,34 @@
 from __future__ import annotations
 
 import datetime as dt
+import os
 from collections import deque
-from collections.abc import Callable, Iterable
+from collections.abc import Callable, Iterable, Iterator, Sequence
+from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass, field
+from functools import partial
 from pathlib import Path
 from zoneinfo import ZoneInfo
 
 from holdsteady.intake.account import Ledger, accounts, file_lines
+from holdsteady.intake.alike import Layouts
 from holdsteady.intake.clock import Clock
-from holdsteady.intake.demand import Demand, demand_of
+from holdsteady.intake.demand import Ask, Demand, demand_of
 from holdsteady.intake.file import Closed, Opened, close_file, judge, open_file
-from holdsteady.intake.numbers import MarkEvidence, is_unproven
-from holdsteady.intake.pool import gather
-from holdsteady.intake.readings import FileAccount, Intake, Readings, SetAside
+from holdsteady.intake.pool import Pool, gather
+from holdsteady.intake.readings import Correction, FileAccount, Intake, Readings, SetAside
+from holdsteady.intake.repeats import find
 from holdsteady.intake.scan import Found, Scanner
-from holdsteady.intake.select import members, take
+from holdsteady.intake.select import Taken, members, take
+from holdsteady.intake.unsettled import unsettled
 from holdsteady.problems import Problem, SettingsError, Severity
+from holdsteady.project.faults import SETTINGS_FILE
 from holdsteady.project.settings import Settings, Source
+from holdsteady.project.toml_lines import KeyPath, TomlLines
+
+READERS = min(4, os.cpu_count() or 1)  # threads: parsing leaves Python's lock to others
+_FEW = 4  # files not worth a thread
+_MANY = 200_000  # rows worth one
 
 Progress = Callable[[str, int, int], None]
 
@@ -49,7 +60,8 @@ def read(
     _check_formats(settings)
     scanner = Scanner(folder, settings)
     found = [scanner.files(source.files) for source in settings.source]
-    problems = [_no_files(source) for source, files in zip(settings.source, found, strict=True) if not files]
+    empty = [number for number, files in enumerate(found) if not files]
+    problems = [_no_files(folder, settings.source[number], number) for number in empty]
     if settings.source and not any(found):
         raise SettingsError(*problems)
     harvest = _Harvest(clock=Clock(zone, as_of), progress=progress, total=sum(len(files) for files in found))
@@ -64,6 +76,8 @@ def read(
         set_aside=_in_order(harvest.set_aside),
         problems=tuple(harvest.problems),
         censored=harvest.censored,
+        implausible=harvest.implausible,
+        corrections=tuple(harvest.corrections),
     )
 
 
@@ -78,34 +92,59 @@ class _Harvest:
     set_aside: list[SetAside] = field(default_factory=list)
     problems: list[Problem] = field(default_factory=list)
     censored: dict[str, int] = field(default_factory=dict)
+    implausible: dict[str, int] = field(default_factory=dict)
+    corrections: list[Correction] = field(default_factory=list)
 
     def bring_in(self, demand: Demand, found: Iterable[Found]) -> None:
         """Read the files of one source."""
         opened: deque[Opened] = deque()
-        for one in found:
-            opened.append(open_file(one, demand))
+        for one in _opened(tuple(found), demand):
+            opened.append(one)
             self.done += 1
             if self.progress is not None:
                 self.progress("Reading files", self.done, self.total)
         judgement = judge(opened)
-        self.problems += _unproven_marks(opened, judgement.marks, demand.source)
+        self.problems += unsettled(opened, judgement, demand.source)
         closed: list[Closed] = []
         while opened:  # what a file's first reading holds is let go as soon as it has become rows
             closed.append(close_file(opened.popleft(), judgement, demand, self.clock))
         pool = gather(closed, demand)
-        ledger = Ledger(pool)
-        for ask in demand.asks:
-            if not ask.values:
-                continue
-            taken = take(ask, pool)
+        repeats = find(pool, demand, closed)
+        if repeats is not None:
+            pool.kept = ~(repeats.repeated | repeats.corrected)
+            self.corrections += repeats.listed(pool)
+        ledger = Ledger(pool, repeats)
+        for ask, taken in _taken(demand, pool):
             ledger.enter(taken)
             self.readings[ask.characteristic.id] = members(ask, pool, taken)
             if taken.censored:
                 self.censored[ask.characteristic.id] = taken.censored
+            if taken.implausible:
+                self.implausible[ask.characteristic.id] = taken.implausible
         self.accounts += accounts(closed, ledger, demand)
         self.set_aside += file_lines(closed, demand)
         self.set_aside += [line for one in closed for line in one.rows_aside]
         self.set_aside += ledger.set_aside(closed)
+
+
+def _opened(found: Sequence[Found], demand: Demand) -> Iterator[Opened]:
+    """Open the files in their order, several at a time where there are many."""
+    opening = partial(open_file, demand=demand, layouts=Layouts(demand))
+    if len(found) < _FEW:
+        yield from map(opening, found)
+        return
+    with ThreadPoolExecutor(max_workers=READERS) as readers:
+        yield from readers.map(opening, found)
+
+
+def _taken(demand: Demand, pool: Pool) -> Iterator[tuple[Ask, Taken]]:
+    """Take from the rows what each characteristic asks for, several at a time where there are many rows."""
+    asks = [ask for ask in demand.asks if ask.values]
+    if pool.size < _MANY:
+        yield from ((ask, take(ask, pool)) for ask in asks)
+        return
+    with ThreadPoolExecutor(max_workers=READERS) as takers:
+        yield from zip(asks, takers.map(partial(take, pool=pool), asks), strict=True)
 
 
 def _in_order(lines: list[SetAside]) -> tuple[SetAside, ...]:
@@ -115,29 +154,22 @@ def _in_order(lines: list[SetAside]) -> tuple[SetAside, ...]:
     )
 
 
-def _no_files(source: Source) -> Problem:
+def _no_files(folder: Path, source: Source, number: int) -> Problem:
     return Problem(
         severity=Severity.WARNING,
-        where=f"source.{source.id}.files",
-        what=f"no file matches {', '.join(source.files)}",
-        remedy="correct the globs, which are below the project folder, or put the files there",
+        where=SETTINGS_FILE,
+        line=_line_of(folder, ("source", number, "files")),
+        what=f"source '{source.id}': no file matches {', '.join(source.files)}",
+        remedy="Correct `files`, whose patterns are below the project folder, or put the files there.",
     )
 
 
-def _unproven_marks(files: Iterable[Opened], marks: MarkEvidence, source: Source) -> list[Problem]:
-    if source.decimal is not None:
-        return []
-    unproven = [one.found.name for one in files if is_unproven(one.marks, marks)]
-    if not unproven:
-        return []
-    return [
-        Problem(
-            severity=Severity.WARNING,
-            where=unproven[0],
-            what=f"a mark before three digits could be decimal or thousands ({len(unproven)} files)",
-            remedy=f"set `decimal` of source '{source.id}'",
-        )
-    ]
+def _line_of(folder: Path, key: KeyPath) -> int | None:
+    """Return the line of a key of the settings, None where they cannot be looked at again."""
+    try:
+        return TomlLines((folder / SETTINGS_FILE).read_text(encoding="utf-8-sig")).line(key)
+    except (OSError, ValueError):
+        return None
 
 
 def _check_formats(settings: Settings) -> None:

@@ -6,10 +6,13 @@ Times are microseconds since 1970-01-01 UTC. Files are paths below the project f
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
+from typing import Final, Literal
 
-from holdsteady.arrays import Floats, Ints
+from holdsteady.arrays import Floats, Ints, Sides
 from holdsteady.problems import Problem
+
+MOST_NAMES: Final = 100  # of a header
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -31,6 +34,8 @@ class Readings:
     file: (R,) index into `files`.
     files: the paths, sorted.
     line: (R,) physical line, from 1, on which the row begins.
+    side: (R, k) -1 where the value is a limit that the reading is known to lie below (`<0.05`), 1 where
+        above, 0 elsewhere; None where nothing is censored. Only with `censored = "at-limit"`.
     """
 
     family: str
@@ -43,6 +48,26 @@ class Readings:
     file: Ints
     files: tuple[str, ...]
     line: Ints
+    side: Sides | None = None
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class ExampleCell:
+    """A cell as it is written, and what it was read as; `role` says what its column is asked for."""
+
+    column: str
+    text: str
+    role: Literal["time", "number", "label"]
+    time: int | None = None
+    number: float | None = None
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Example:
+    """The first row of a file that could be used: the cells that are asked for, in the file's order."""
+
+    line: int
+    cells: tuple[ExampleCell, ...]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -64,6 +89,9 @@ class FileAccount:
     time_format: str
     first_time: int | None
     last_time: int | None
+    header: tuple[str, ...] = ()  # the names as read, at most `MOST_NAMES`
+    columns: int = 0  # how many there are
+    example: Example | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -78,11 +106,23 @@ class SetAside:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class Correction:
+    """A row that another one with the same key, in a newer file or further down, replaces."""
+
+    file: str
+    line: int
+    by_file: str
+    by_line: int
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class Intake:
     """Everything read in one build.
 
     `readings` maps a characteristic's id to its members, sorted by name; an id whose data were
-    not found maps to an empty tuple. `censored` and `implausible` count cells by characteristic id.
+    not found maps to an empty tuple. `censored` and `implausible` count, by characteristic id, the cells
+    that were set aside for it. `corrections` lists corrected rows, of each source the first 1,000 by file
+    and line.
     """
 
     readings: Mapping[str, tuple[Readings, ...]]
@@ -90,3 +130,5 @@ class Intake:
     set_aside: tuple[SetAside, ...]
     problems: tuple[Problem, ...]
     censored: Mapping[str, int]
+    implausible: Mapping[str, int] = field(default_factory=dict)
+    corrections: tuple[Correction, ...] = ()

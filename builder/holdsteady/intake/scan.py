@@ -6,15 +6,17 @@ import fnmatch
 import os
 import re
 import stat
-from collections.abc import Iterator
-from dataclasses import dataclass, field
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass, field, replace
 from pathlib import Path
 
 from holdsteady.intake.readings import SetAside
 from holdsteady.project.settings import Settings
 
 ENDINGS = (".csv", ".tsv", ".txt")
+PACKED = ".gz"
 _OURS = ("holdsteady.toml", "logbook.csv", "limits.csv")
+_LEAVES = "a link out of the project folder; copy in what it leads to"
 _WILD = re.compile(r"[*?\[]")
 
 
@@ -38,12 +40,13 @@ class Scanner:
     settings: Settings
     _listings: dict[Path, list[os.DirEntry[str]]] = field(default_factory=dict)
     _closed: dict[str, str] = field(default_factory=dict)
+    _linked: bool = False
     _root: Path = field(init=False)
     _site: Path | None = field(init=False)
 
     def __post_init__(self) -> None:
-        self._root = self.folder.resolve()
-        site = (self.folder / self.settings.site.output).resolve()
+        self._root = _real(self.folder)
+        site = _real(self.folder / self.settings.site.output)
         self._site = None if self._root.is_relative_to(site) else site
 
     def files(self, globs: tuple[str, ...]) -> tuple[Found, ...]:
@@ -57,7 +60,8 @@ class Scanner:
                 one = self._look(path)
                 if one is not None:
                     found.setdefault(one.name, one)
-        return tuple(found[name] for name in sorted(found))
+        files = [found[name] for name in sorted(found)]
+        return tuple(self._each_once(files) if self._linked else files)
 
     def closed_folders(self) -> tuple[SetAside, ...]:
         """Return a line for each folder that could not be listed."""
@@ -72,10 +76,7 @@ class Scanner:
         part, rest = parts[0], parts[1:]
         if part == "**":
             yield from self._expand(folder, rest or ["*"], above)
-            for entry in self._list(folder):
-                if not entry.name.startswith(".") and self._enters(entry, above):
-                    inner = Path(entry.path)
-                    yield from self._expand(inner, parts, above | {inner.resolve()})
+            yield from self._deeper(folder, parts, above)
             return
         matches = _matcher(part, last=not rest)
         for entry in self._list(folder):
@@ -84,16 +85,36 @@ class Scanner:
             if not rest:
                 yield Path(entry.path)
             elif self._enters(entry, above):
-                inner = Path(entry.path)
-                yield from self._expand(inner, rest, above | {inner.resolve()})
-            elif entry.is_symlink() and not self._inside(Path(entry.path)):
-                yield Path(entry.path)
+                yield from self._expand_in(entry, rest, above)
+            elif entry.is_symlink():
+                yield from self._not_entered(Path(entry.path))
+
+    def _deeper(self, folder: Path, parts: list[str], above: frozenset[Path]) -> Iterator[Path]:
+        for entry in self._list(folder):
+            if entry.name.startswith("."):
+                continue
+            if self._enters(entry, above):
+                yield from self._expand_in(entry, parts, above)
+            elif entry.is_symlink() and Path(entry.path).is_dir():
+                self._pass_over(Path(entry.path))
+
+    def _expand_in(self, entry: os.DirEntry[str], parts: list[str], above: frozenset[Path]) -> Iterator[Path]:
+        inner = Path(entry.path)
+        yield from self._expand(inner, parts, above | {_real(inner)})
+
+    def _not_entered(self, link: Path) -> Iterator[Path]:
+        """Yield a link that stands where a folder should, unless it leads back to one that it lies in."""
+        if self._inside(link) and link.is_dir():
+            self._pass_over(link)
+        else:
+            yield link
 
     def _list(self, folder: Path) -> list[os.DirEntry[str]]:
         if folder not in self._listings:
             try:
                 with os.scandir(folder) as entries:
                     self._listings[folder] = sorted(entries, key=lambda entry: entry.name)
+                self._linked |= any(entry.is_symlink() for entry in self._listings[folder])
             except OSError as error:
                 self._closed[self._name(folder)] = f"the folder cannot be listed: {error.strerror}"
                 self._listings[folder] = []
@@ -105,11 +126,34 @@ class Scanner:
                 return False
         except OSError:
             return False
-        target = Path(entry.path).resolve()
+        target = _real(Path(entry.path))
         return target not in above and target != self._site and self._inside(target)
 
+    def _pass_over(self, link: Path) -> None:
+        """List a link to a folder that is not entered."""
+        if not self._inside(link):
+            self._closed[self._name(link)] = _LEAVES
+        elif _real(link) != self._site:
+            self._closed[self._name(link)] = "a link back to a folder that it lies in"
+
+    def _each_once(self, files: Sequence[Found]) -> Iterator[Found]:
+        """Pass over links to files that are there by name or another link, lest rows be doubled."""
+        targets = {one.name: _real(one.path) for one in files if not one.trouble}
+        own = {
+            one.name: targets[one.name] == self._root / one.path.relative_to(self.folder)
+            for one in files
+            if not one.trouble
+        }
+        seen: dict[Path, str] = {}
+        for name in sorted(targets, key=lambda name: (not own[name], name)):
+            seen.setdefault(targets[name], name)
+        for one in files:
+            first = seen.get(targets.get(one.name, Path()), one.name)
+            twice = "" if first == one.name else f"a link to {first}, which is read already"
+            yield replace(one, trouble=one.trouble or twice)
+
     def _inside(self, path: Path) -> bool:
-        return path.resolve().is_relative_to(self._root)
+        return _real(path).is_relative_to(self._root)
 
     def _look(self, path: Path) -> Found | None:
         name = self._name(path)
@@ -117,16 +161,14 @@ class Scanner:
             return None
         try:
             if path.is_symlink():
-                target = path.resolve()
+                target = _real(path)
                 if not target.is_relative_to(self._root):
-                    reason = "a link out of the project folder; copy the file in"
-                    return Found(name=name, path=path, trouble=reason)
+                    return Found(name=name, path=path, trouble=_LEAVES)
                 if self._site is not None and target.is_relative_to(self._site):
                     return None
             mode = path.stat().st_mode
-        except (OSError, RuntimeError) as error:
-            reason = getattr(error, "strerror", None) or "the link leads nowhere"
-            return Found(name=name, path=path, trouble=f"cannot be opened: {reason}")
+        except OSError as error:
+            return Found(name=name, path=path, trouble=f"cannot be opened: {error.strerror or error}")
         if stat.S_ISDIR(mode):
             return None
         return Found(name=name, path=path, trouble=_unfit(name, mode))
@@ -136,14 +178,16 @@ class Scanner:
         return os.fsencode(relative).decode("utf-8", "backslashreplace")
 
 
+def _real(path: Path) -> Path:
+    """Return where a path leads through all links, as far as it leads anywhere."""
+    return Path(os.path.realpath(path))  # `Path.resolve` refuses links in a circle in some versions
+
+
 def _unfit(name: str, mode: int) -> str:
     if not stat.S_ISREG(mode):
         return "not a regular file; only regular files are opened"
-    lowered = name.lower()
-    if lowered.endswith(".gz"):
-        return "compressed, which is not supported yet; unpack it"
-    if not lowered.endswith(ENDINGS):
-        return "not a .csv, .tsv or .txt file; save it as one or narrow `files` of its source"
+    if not name.lower().removesuffix(PACKED).endswith(ENDINGS):
+        return "not a .csv, .tsv or .txt file, or .gz of one; save it as one or narrow `files` of its source"
     return ""
 
 

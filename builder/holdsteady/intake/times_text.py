@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import functools
 import re
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from enum import IntEnum
 
@@ -125,6 +125,30 @@ def parse(cells: pa.StringArray, given: str | None = None) -> Stamps:
     return stamps
 
 
+def together(parts: Sequence[Stamps]) -> Stamps:
+    """Return the stamps of all parts, one after the other."""
+    empty = np.zeros(0, dtype=np.int64)
+    return Stamps(
+        first=np.concatenate([empty, *(part.first for part in parts)]),
+        second=np.concatenate([empty, *(part.second for part in parts)]),
+        zoned=np.concatenate([empty.astype(np.bool_), *(part.zoned for part in parts)]),
+        family=np.concatenate([empty.astype(np.uint8), *(part.family for part in parts)]),
+    )
+
+
+def one_column(columns: Sequence[pa.StringArray]) -> pa.StringArray:
+    """Return date and clock as one text, "" where either is empty; a single column is as it was.
+
+    A date that carries the midnight of its own, as spreadsheets write it, is taken without.
+    """
+    if len(columns) == 1:
+        return columns[0]
+    date, clock = (pc.utf8_trim_whitespace(column) for column in columns)
+    date = pc.replace_substring_regex(date, r"[ T]0?0:00(?::00(?:[.,]0+)?)?$", "")
+    both = pc.and_(pc.not_equal(date, ""), pc.not_equal(clock, ""))
+    return pc.if_else(both, pc.binary_join_element_wise(date, clock, " "), "")
+
+
 def _parse_width(matrix: npt.NDArray[np.uint8], rows: Ints, stamps: Stamps) -> None:
     digit = (matrix - _ZERO) < 10  # uint8 wraps, so that bytes below "0" are large
     shapes = np.where(digit, np.uint8(_ZERO), matrix)
@@ -146,7 +170,7 @@ _CLOCK = (
 _ZONE = r"(?:\ ?(?P<zone>[Zz]|(?P<sign>[+-])(?P<zone_hour>00)(?::?(?P<zone_minute>00))?))?"
 _YEAR_FIRST = (
     r"(?P<year>0000)(?P<mark>[-/.])(?P<month>0{1,2})(?P=mark)(?P<day>0{1,2})"
-    rf"(?:(?:[Tt]|\ +){_CLOCK}{_ZONE})?"
+    rf"(?:(?:[Tt]|\ +)(?:{_CLOCK}|(?P<only_hour>00)){_ZONE})?"
 )
 _COMPACT = (
     r"(?P<year>0000)(?P<month>00)(?P<day>00)"
@@ -215,7 +239,7 @@ def _number(matrix: npt.NDArray[np.uint8], start: int, end: int) -> Ints:
 
 
 def _clock(match: re.Match[str], matrix: npt.NDArray[np.uint8], part: Part) -> Ints:
-    hour, minute, second = part("hour"), part("minute"), part("second")
+    hour, minute, second = part("hour") + part("only_hour"), part("minute"), part("second")
     fine = (minute < 60) & (second < 60)
     if "half" in match.re.groupindex and match["half"] is not None:
         fine &= (hour >= 1) & (hour <= 12)

@@ -46,12 +46,40 @@ class Calendar:
             piece_start, offset = at, offset_after
         return total + self._up_to(end + offset) - self._up_to(piece_start + offset)
 
+    def moment_after(self, start: int, span: int, zone: ZoneInfo) -> int:
+        """Return the first moment by which `span` (above 0) of calendar time has passed since `start`."""
+        piece_start, offset, rest = start, _offset(start, zone), span
+        end = start + _WEEK + span * _WEEK // self._week  # no calendar time takes longer to pass
+        for at, offset_after in _changes_between(start, end + _WEEK, zone):
+            passed = self._up_to(at + offset) - self._up_to(piece_start + offset)
+            if passed >= rest:
+                break
+            rest -= passed
+            piece_start, offset = at, offset_after
+        return self._wall_at(self._up_to(piece_start + offset) + rest) - offset
+
+    @property
+    def _week(self) -> int:
+        """Calendar time in a week, microseconds."""
+        return sum(end - begin for begin, end in self.spans) * _MINUTE
+
+    def _wall_at(self, passed: int) -> int:
+        """Return the first moment of the plant's clock up to which so much calendar time has passed."""
+        weeks, rest = divmod(passed, self._week)
+        if rest == 0:  # reached at the end of the week before's last span
+            weeks, rest = weeks - 1, self._week
+        for begin, end in self.spans:
+            length = (end - begin) * _MINUTE
+            if rest <= length:
+                return weeks * _WEEK + begin * _MINUTE + rest - _MONDAY
+            rest -= length
+        raise AssertionError("a week holds all its spans")
+
     def _up_to(self, wall: int) -> int:
         """Calendar time from a fixed Monday to a moment of the plant's clock; differences have meaning."""
         weeks, rest = divmod(wall + _MONDAY, _WEEK)
-        whole = sum(end - begin for begin, end in self.spans) * _MINUTE
         part = sum(max(0, min(rest, end * _MINUTE) - begin * _MINUTE) for begin, end in self.spans)
-        return weeks * whole + part
+        return weeks * self._week + part
 
 
 ALWAYS = Calendar(spans=((0, _WEEK_MINUTES),))

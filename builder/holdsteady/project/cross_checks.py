@@ -31,14 +31,16 @@ def cross_faults(
 ) -> Iterator[Fault]:
     """Find where keys contradict each other; `own` are the keys the characteristic itself gives.
 
-    Rules that come from the defaults are laid over charts of all kinds: those that a chart does not allow
-    are no fault there, they are left out and said on its page.
+    Rules, specifications, cadences and gaps that come from the defaults are laid over characteristics of all
+    kinds: where they cannot apply they are no fault; rules that are left out are said on the page.
     """
-    yield from _source(settings, sources)
+    yield from _source(settings, sources, own)
     yield from _data(settings)
     yield from _chart(settings)
     yield from _estimator(settings)
     yield from _limits(settings)
+    if "specification" in own:
+        yield from _specification(settings)
     yield from _options(settings)
     if "rules" in own:
         yield from _rules(settings)
@@ -51,7 +53,7 @@ def _kind(settings: Characteristic) -> str:
     return "subgroups" if settings.values is not None or settings.subgroup is not None else "individuals"
 
 
-def _source(settings: Characteristic, sources: Mapping[str, Source]) -> Iterator[Fault]:
+def _source(settings: Characteristic, sources: Mapping[str, Source], own: Collection[str]) -> Iterator[Fault]:
     source = sources.get(settings.source)
     if source is None:
         guess = nearest(settings.source, sources)
@@ -68,6 +70,18 @@ def _source(settings: Characteristic, sources: Mapping[str, Source]) -> Iterator
     if settings.baseline.from_ is not None:
         what = f"a `baseline` by dates needs times, and source '{source.id}' has none"
         yield Fault(keys=(("baseline", "from"), ("source",)), what=what, remedy=f"{remedy}, or use `points`.")
+    for key in ("cadence", "calendar", "gap"):
+        if key in own:
+            what = f"`{key}` needs times, and source '{source.id}' has none"
+            yield Fault(keys=((key,), ("source",)), what=what, remedy=f"{remedy}, or take `{key}` out.")
+    for key in ("limits", "specification"):
+        dated = getattr(settings, key)
+        for index, one in enumerate(dated):
+            if key in own and one.from_ is not None:
+                place: KeyPath = (key, index) if len(dated) > 1 else (key,)
+                what = f"a `{key}` with `from` needs times, and source '{source.id}' has none"
+                keys = ((*place, "from"), (key,), ("source",))
+                yield Fault(keys=keys, what=what, remedy=f"{remedy}, or take `from` out.")
 
 
 def _data(settings: Characteristic) -> Iterator[Fault]:
@@ -143,6 +157,27 @@ def _limits(settings: Characteristic) -> Iterator[Fault]:
         if not attribute and limits.sigma is None:
             what = "`limits` need a `sigma` here"
             yield Fault(keys=(place, *_SHAPE), what=what, remedy="Add the sigma of a single reading.")
+        if attribute:
+            highest = _highest_centre(settings)
+            if limits.centre <= 0 or (highest is not None and limits.centre >= highest):
+                span = "above 0" if highest is None else f"above 0 and below {highest:g}"
+                what = f"a centre of {limits.centre:g} cannot be: it must lie {span}"
+                yield Fault(keys=((*place, "centre"), *_SHAPE), what=what, remedy="Correct `centre`.")
+
+
+def _highest_centre(settings: Characteristic) -> float | None:
+    """Return what the centre of a chart of counts must stay below; None where nothing is too high."""
+    if settings.chart == "np":
+        return float(settings.size) if isinstance(settings.size, int | float) else None
+    is_fraction = settings.chart == "p" or (settings.chart is None and settings.size is not None)
+    return 1.0 if is_fraction else None
+
+
+def _specification(settings: Characteristic) -> Iterator[Fault]:
+    if settings.specification and _kind(settings) == "attribute":
+        what = "a `specification` is for measured values; counts are not judged against one"
+        remedy = "Take it out; what is wanted of counts can stand in `reaction`."
+        yield Fault(keys=(("specification",), *_DATA), what=what, remedy=remedy)
 
 
 def _options(settings: Characteristic) -> Iterator[Fault]:

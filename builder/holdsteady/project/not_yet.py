@@ -11,18 +11,15 @@ from dataclasses import dataclass
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class NotYet:
-    """A key of a table that is refused: always, for some values, for all texts but one, or as a list."""
+    """A key of a table that is refused: always, for some values, or for all texts but one."""
 
     table: str
     key: str
     values: tuple[str, ...] = ()
     other_than: str = ""
-    as_list: bool = False
 
     def refuses(self, value: object) -> bool:
         """Tell whether this value of the key is refused; of a list, whether any of its items is."""
-        if self.as_list:
-            return isinstance(value, list)
         if self.values:
             return value in self.values
         if self.other_than:
@@ -37,10 +34,6 @@ NOT_YET = (
     NotYet(table="site", key="accent"),
     NotYet(table="site", key="watch"),
     NotYet(table="site", key="show_people"),
-    NotYet(table="source", key="encoding", other_than="utf-8"),
-    NotYet(table="source", key="time", as_list=True),
-    NotYet(table="source", key="key"),
-    NotYet(table="source", key="newest"),
     NotYet(table="source", key="settle"),
     NotYet(table="characteristic", key="variables"),
     NotYet(
@@ -54,7 +47,6 @@ NOT_YET = (
     NotYet(table="characteristic", key="limits_by", values=("probability",)),
     NotYet(table="characteristic", key="false_alarm"),
     NotYet(table="characteristic", key="width", values=("guaranteed",)),
-    NotYet(table="characteristic", key="censored", values=("at-limit",)),
     NotYet(table="characteristic", key="capability"),
     NotYet(table="characteristic", key="natural_limit"),
     NotYet(table="characteristic", key="strata"),
@@ -68,9 +60,7 @@ def refused(table: str, raw: Mapping[str, object]) -> list[tuple[str, str]]:
         if entry.table != table or entry.key not in raw or not entry.refuses(raw[entry.key]):
             continue
         value = raw[entry.key]
-        if entry.as_list:
-            what = f"`{entry.key}` as a list is not supported yet"
-        elif entry.values or entry.other_than:
+        if entry.values or entry.other_than:
             what = f"`{entry.key}` = '{value}' is not supported yet"
         else:
             what = f"`{entry.key}` is not supported yet"

@@ -23,6 +23,7 @@ from holdsteady.project.toml_lines import KeyPath
 
 _TABLES = ("site", "defaults", "source", "characteristic")
 _STAND_IN = {"id": "unnamed", "source": "unnamed"}
+_NO_SECONDS = re.compile(r"=\s*[0-9]{4}-[0-9]{2}-[0-9]{2}[T ][0-9]{2}:[0-9]{2}(?![0-9:])")
 _PLACE = re.compile(r" \(at (?:line (\d+), column \d+|end of document)\)$")
 History = TypeVar("History", tuple[Specification, ...], tuple[GivenLimits, ...])
 
@@ -69,11 +70,15 @@ def _parse(text: str) -> dict[str, Any]:
         match = _PLACE.search(str(error))
         said = str(error)[: match.start()] if match else str(error)
         line = int(match[1]) if match and match[1] else len(text.rstrip().splitlines()) or 1
+        remedy = "Correct this line; the settings could not be read any further."
+        rows = text.splitlines()
+        if 0 < line <= len(rows) and _NO_SECONDS.search(rows[line - 1]):
+            remedy = "Write times with their seconds, as in 2026-03-17T14:10:00."
         problem = Problem(
             severity=Severity.ERROR,
             where=SETTINGS_FILE,
             what=f"is not valid TOML: {said[:1].lower()}{said[1:]}",
-            remedy="Correct this line; the settings could not be read any further.",
+            remedy=remedy,
             line=line,
         )
         raise SettingsError(problem) from None
@@ -153,6 +158,7 @@ def _source_faults(source: Source) -> Iterable[Fault]:
         yield Fault(
             keys=(("decimal",), ("delimiter",)), what=what, remedy="Leave out the one that is not sure."
         )
+    yield from _key_faults(source)
     if source.time_format is not None:
         if source.time is None:
             yield Fault(
@@ -163,6 +169,20 @@ def _source_faults(source: Source) -> Iterable[Fault]:
         if not _reads_back(source.time_format):
             what = f"{shown(source.time_format)} is no form of a date and time"
             yield Fault(keys=(("time_format",),), what=what, remedy="Write it as in '%d.%m.%Y %H:%M:%S'.")
+
+
+def _key_faults(source: Source) -> Iterable[Fault]:
+    if "key" in source.model_fields_set and not source.key:
+        remedy = "Name something, or leave the key out."
+        yield Fault(keys=(("key",),), what="must hold at least one item", remedy=remedy)
+        return
+    for index, column in enumerate(source.key):
+        if column in source.key[:index]:
+            what = f"names column {shown(column)} twice"
+            yield Fault(keys=(("key", index),), what=what, remedy="Name each column once.")
+    if "newest" in source.model_fields_set and not source.key:
+        remedy = "Add `key`, the columns that tell one reading from another, or take `newest` out."
+        yield Fault(keys=(("newest",), ("key",)), what="goes with `key`, which is not given", remedy=remedy)
 
 
 def _pattern_fault(pattern: str) -> str:

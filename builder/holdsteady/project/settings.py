@@ -58,6 +58,27 @@ def _is_column_or_size(value: object) -> object:
     raise ValueError("must be the name of a column, or a number")
 
 
+def _is_time(value: object) -> object:
+    if value is None:
+        return value
+    columns = value if isinstance(value, tuple | list) else (value,)
+    if not 1 <= len(columns) <= 2 or any(not isinstance(one, str) or not one for one in columns):
+        raise ValueError('must be the name of a column, or two as in ["date", "clock"]')
+    if len(set(columns)) < len(columns):
+        raise ValueError("names one column twice")
+    return columns[0] if len(columns) == 1 else tuple(columns)
+
+
+def _is_encoding(value: object) -> object:
+    try:
+        known = value is None or (isinstance(value, str) and "0".encode(value) != b"")
+    except (LookupError, ValueError):  # no such name, or one that turns bytes into bytes
+        known = False
+    if not known:
+        raise ValueError("must be an encoding of text, as in 'utf-8', 'cp1252' or 'utf-16-le'")
+    return value
+
+
 def _is_cell(value: object) -> object:
     # Truth values are numbers to the language.
     if isinstance(value, str) or (isinstance(value, int | float) and math.isfinite(value)):
@@ -97,12 +118,14 @@ class Source(Model):
 
     id: Identifier
     files: tuple[str, ...] = Field(min_length=1)
-    time: Column | None = None
+    time: Annotated[Column | tuple[Column, Column] | None, BeforeValidator(_is_time)] = None
     delimiter: str | None = None
     decimal: Literal[".", ","] | None = None
-    encoding: Literal["utf-8"] | None = None
+    encoding: Annotated[str | None, BeforeValidator(_is_encoding)] = None
     time_format: str | None = None
     missing: tuple[str, ...] = ()
+    key: tuple[Column, ...] = ()
+    newest: Literal["path", "modified"] = "path"
 
 
 class Baseline(Model):
@@ -178,7 +201,7 @@ class Characteristic(Model):
     limits_by: Literal["sigma"] = "sigma"
     width: float = Field(default=3.0, gt=0)
     estimator: EstimatorName | None = None
-    censored: Literal["set-aside"] = "set-aside"
+    censored: Literal["set-aside", "at-limit"] = "set-aside"
     rules: tuple[RuleSetting, ...] | None = None  # None: the chart's default
     cadence: Duration | None = None
     calendar: str | None = None
