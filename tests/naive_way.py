@@ -96,7 +96,8 @@ def judge(
                 basis = in_force(points[index], name, settings, context, lines, own[name])
                 fill(panels[name], points, index, basis, settings)
                 last[name] = basis
-        before = last
+        # An era without limits of its own leaves what was known before it.
+        before = {name: one if one.full else before.get(name, one) for name, one in last.items()}
     return list(panels.values())
 
 

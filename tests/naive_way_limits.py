@@ -174,4 +174,5 @@ def count_line(centre: float, width: float, size: float, chart: str) -> Line:
         return Line(centre=centre)
     sigma = math.sqrt(variance)
     lower, upper = centre - width * sigma, centre + width * sigma
-    return Line(centre, lower if lower > 0 else NAN, upper if upper < top else NAN, sigma)
+    near = 1e-9 * sigma  # a limit that is 0 or `top` but for rounding is no limit
+    return Line(centre, lower if lower > near else NAN, upper if upper < top - near else NAN, sigma)

@@ -106,7 +106,7 @@ def see(points: Sequence[Any], panel: Any, index: int, settings: Characteristic)
     if panel.name == "single":
         if settings.chart in ("p", "np"):
             p = drawn.centre if settings.chart == "p" else drawn.centre / point.size
-            expected = point.size * p
+            expected = min(point.size * p, point.size * (1 - p))
             low, high = binomial_medians(int(point.size), p)
         else:
             expected = drawn.centre * (point.size if settings.chart == "u" else 1)

@@ -148,3 +148,11 @@ def test_a_varying_size_is_an_error_that_points_to_the_chart_that_allows_it() ->
     assert np_chart.remedy == 'Set chart = "p".'
     c_chart = find([1] * 9, given={"count": "c", "subgroup": {"column": "s"}}, subgroup=list("aabbccdde"))
     assert c_chart.remedy == 'Set chart = "u", and `size`.'
+
+
+def test_the_hour_that_a_clock_change_repeats_is_another_one() -> None:
+    zone = ZoneInfo("Europe/Lisbon")
+    midnight = to_microseconds(dt.datetime(2026, 10, 25, 0, 0), zone)  # noqa: DTZ001  local
+    time = [midnight + quarter * HOUR // 4 for quarter in range(16)]
+    hourly = points(range(16), {"subgroup": {"every": "1h"}}, time=time, zone="Europe/Lisbon")
+    assert hourly.n.tolist() == [4, 4, 4, 4]

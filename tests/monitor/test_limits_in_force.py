@@ -132,7 +132,7 @@ def test_a_measurement_fault_is_neither_judged_nor_a_moving_range() -> None:
 
 def test_no_variation_gives_no_limits_and_says_so() -> None:
     finding = find([4.0] * 30)
-    assert finding.state == "gathering"
+    assert finding.state == "not-computed"
     assert finding.limits[0].centre == 4.0
     assert "no variation" in finding.limits[0].note
 
@@ -178,3 +178,48 @@ def test_adopted_limits_keep_the_width_they_were_adopted_with() -> None:
     lines = [adopted(START, 10.0, 1.0, width=2.0)]
     finding = find(QUIET, made=context(register=lines), given={"width": 4.0})
     assert finding.panels[0].upper[0] == 12.0
+
+
+def test_an_era_without_limits_passes_on_those_before_it() -> None:
+    changes = [entry(START + 11 * HOUR, kind="process-change", action="learn")]
+    changes.append(entry(START + 14 * HOUR, kind="process-change", action="keep-limits", line=3))
+    finding = find(QUIET * 2, made=context(logbook=changes))
+    rows = [row for row in finding.limits if row.panel == "location"]
+    assert [row.limited for row in rows] == [True, False, True]
+    assert (rows[2].centre, rows[2].sigma) == (rows[0].centre, rows[0].sigma)
+    assert [calculation.in_force for calculation in finding.calculation] == [False]
+
+
+def test_an_incomplete_subgroup_changes_no_limits() -> None:
+    values = [*QUIET * 5, 10.0, 11.0]
+    finding = find(values, given={"subgroup": {"size": 5}})
+    assert finding.points is not None
+    assert finding.points.open.tolist() == [False] * 10 + [True]
+    location, spread = finding.limits_now
+    assert (location.n, location.at_index, location.varies) == (5.0, 9, False)
+    assert location.lower is not None
+    assert location.lower == finding.panels[0].lower[9]
+    assert spread.centre == finding.panels[1].centre[9]
+
+
+@pytest.mark.parametrize(("chart", "size"), [("c", None), ("np", [50.0] * 22)])
+def test_an_incomplete_subgroup_of_counts_is_no_other_size(chart: str, size: list[float] | None) -> None:
+    sized = {} if size is None else {"size": "n"}
+    given = {"count": "c", "chart": chart, "subgroup": {"size": 2}, **sized}
+    finding = find([3.0, 4.0] * 10 + [2.0], given=given, size=None if size is None else size[:21])
+    assert finding.state == "steady"
+
+
+def test_limits_that_no_point_has_reached_are_not_in_force() -> None:
+    finding = find(QUIET, made=context(register=[adopted(START + 90 * HOUR, 10.0, 1.0)]))
+    assert [row.kind for row in finding.limits_now] == ["provisional", "provisional"]
+    assert [(row.kind, row.centre) for row in finding.limits_waiting] == [("adopted", 10.0)]
+    assert finding.panels[0].in_baseline.all()
+
+
+def test_a_signal_before_a_process_change_does_not_go_on() -> None:
+    values = [*QUIET * 3, 30.0, 30.0, 10.0]
+    change = entry(START + 33 * HOUR, kind="process-change")
+    finding = find(values, made=context(logbook=[change]), given={"baseline": {"points": 20}})
+    assert [case.ongoing for case in finding.cases] == [False]
+    assert finding.state == "gathering"

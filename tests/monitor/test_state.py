@@ -96,9 +96,11 @@ def test_runs_of_counts_are_refused_below_an_expected_count_of_five() -> None:
     few = find([4] * 12, given={"count": "c", "limits": [{"centre": 3.0}], "rules": rules})
     assert few.signals == ()
     assert few.panels[0].refused_rules == {"run-one-side": "the expected count is below 5"}
+    assert [rule.name for rule in few.panels[0].rules] == ["outside-limits"]
+    nearly_all = {"count": "c", "size": "n", "limits": [{"centre": 0.995}], "rules": rules}
+    assert "run-one-side" in find([200] * 12, given=nearly_all, size=[200] * 12).panels[0].refused_rules
     many = find([9] * 12, given={"count": "c", "limits": [{"centre": 7.0}], "rules": rules})
     assert [s.rule for s in many.signals] == ["run-one-side"]
-    assert few.expected["count"] == 3.0
 
 
 def test_zone_rules_do_not_apply_to_spread_panels() -> None:
@@ -136,3 +138,50 @@ def test_slugs_are_safe_and_unique() -> None:
     assert all(len(slug) <= 80 and slug.isascii() and slug != "con" for slug in got)
     assert slugs(["bore"]) == ["bore"]
     assert slugs(names)[1] == slugs(["bore", "Bore"])[1]
+
+
+def test_a_measurement_fault_tells_nothing_of_the_gauges_step() -> None:
+    values = [round(v, 1) for v in NOISE]
+    values[30] = 99.987
+    assert find(values).resolution == pytest.approx(0.001)
+    fault = entry(START + 31 * HOUR, kind="measurement-fault", exclude=True)
+    assert find(values, made=context(logbook=[fault])).resolution == pytest.approx(0.1)
+
+
+def test_doubts_say_what_differs() -> None:
+    rng = np.random.default_rng(8)
+    values = [*rng.normal(size=25), *rng.normal(1.0, 1.0, size=40)]
+    given = {"rules": [{"rule": "trend"}]}
+    assert find(values, given=given).doubts == ("the level differs from the baseline's",)
+    assert find(values[:40], given=given).doubts == ()
+
+
+def test_dispersion_is_shown_where_limits_are_given_too() -> None:
+    counts = np.random.default_rng(3).binomial(500, 0.05, size=60).tolist()
+    given = {"count": "c", "size": "n", "limits": [{"centre": 0.05}]}
+    assert find(counts, given=given, size=[500] * 60).overdispersion == pytest.approx(1.0, abs=0.25)
+
+
+def test_a_full_baseline_without_variation_is_not_computed_and_says_what_to_do() -> None:
+    finding = find([0] * 40 + [20] * 20, given={"count": "c", "size": "n"}, size=[20] * 60)
+    assert (finding.state, finding.reason) == ("not-computed", "no events in the baseline")
+    assert finding.remedy == "Give `limits`, or a `baseline` that holds some variation."
+    assert finding.points is not None
+    assert find([5.0] * 40 + [9.0] * 20).state == "not-computed"
+    assert find([5.0] * 20).state == "gathering"  # later points may still vary
+
+
+def test_variation_that_is_but_rounding_is_none() -> None:
+    assert find([0.3, 0.1 + 0.2] * 20).state == "not-computed"
+
+
+def test_limits_beyond_what_can_be_are_limits_all_the_same() -> None:
+    finding = find([1, 0, 2, 1] * 10, given={"count": "c", "size": "n"}, size=[2] * 40)
+    assert finding.state == "steady"
+    assert (finding.limits[0].lower, finding.limits[0].upper) == (None, None)
+
+
+def test_slugs_stay_apart_whatever_the_names() -> None:
+    names = ["a-b", "a_b"]
+    names.append(slugs(names)[0])
+    assert len(set(slugs(names))) == 3

@@ -114,6 +114,7 @@ def _case(charted: Charted, members: Sequence[Signal], panels: Mapping[str, Pane
         outside_specification=None if outside.by_point is None else int(outside.by_point[here].sum()),
         readings=int(outside.readings[here].sum()),
         good_way=_good_way(lead, settings),
+        gross=any(_gross(signal, panels[signal.panel]) for signal in members),
     )
 
 

@@ -19,7 +19,7 @@ class Charted:
     """What limits, signals and cases are worked out from. Arrays are (N,), one entry a point.
 
     `values` maps each panel to its plotted statistic. `real` leaves out measurement faults; `usable` also
-    leaves out what the logbook excludes, what is missing and what is still open.
+    leaves out what the logbook excludes, what is drawn at a limit, what is missing and what is still open.
     """
 
     name: str

@@ -10,7 +10,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Literal
 
-from holdsteady.arrays import Bools, Floats, Ints
+from holdsteady.arrays import Bools, Floats, Ints, Sides
 from holdsteady.project.logbook import LogbookEntry
 from holdsteady.project.settings import Characteristic, Specification
 from holdsteady.spc.rules import Rule
@@ -19,6 +19,7 @@ State = Literal["not-computed", "signalling", "silent", "gathering", "answered",
 CaseState = Literal["withdrawn", "answered", "baseline", "historical", "open", "ended"]
 Direction = Literal["high", "low", "none"]
 LimitsKind = Literal["provisional", "adopted", "given"]
+TOO_FEW = "too few points"
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -36,6 +37,7 @@ class Points:
     excluded: Bools  # (N,) taken out of estimation by the logbook
     faulty: Bools  # (N,) a measurement fault: shown, not judged
     open: Bools  # (N,) the newest subgroup, incomplete: shown, not judged
+    side: Sides  # (N,) -1 drawn at a limit that a reading lies below, 1 above; 0 real: others set no limits
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -95,6 +97,7 @@ class Case:
     outside_specification: int | None  # readings outside within the case's span; None without a specification
     readings: int  # readings within the case's span
     good_way: bool  # points the way `better` names
+    gross: bool  # a point of it lies beyond 5 sigma
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -118,6 +121,8 @@ class LimitsInForce:
     kind: LimitsKind
     start_index: int
     stop_index: int
+    at_index: int | None  # its newest complete point, to quote where limits vary; None before any
+    limited: bool  # whether there are limits, and not a centre alone
     in_force_from: int | None
     centre: float | None
     sigma: float | None  # of a single reading; None for attribute charts
@@ -130,7 +135,7 @@ class LimitsInForce:
     baseline_to: int | None
     excluded: int | None
     estimator: str
-    note: str  # "" or why something is missing: "too few points", "no variation in the baseline"
+    note: str  # "" or why something is missing: TOO_FEW, "no variation in the baseline"
     reason: str  # of an adopted set
     by: str
     adopted_at: int | None
@@ -138,25 +143,34 @@ class LimitsInForce:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Calculation:
-    """How the limits of the latest era were calculated, with this characteristic's own numbers.
+    """How limits are calculated from the baseline of the latest era, with this characteristic's own numbers.
 
-    `figures` are (symbol or name, value, unit-bearing) in the order they are used; `source` cites the method.
+    `in_force` says whether these are the limits in force; else others were given, adopted or kept, and this
+    is what a new estimate from `points` points would be. `figures` are (symbol or name, value, unit-bearing)
+    in the order they are used; `source` cites the method.
     """
 
     method: str
+    in_force: bool
+    points: int
     figures: tuple[tuple[str, float, bool], ...]
     source: str
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class LevelSummary:
-    """Readings of one era taken together, whatever the state (n - 1 for the standard deviation)."""
+    """Readings of one era taken together, whatever the state (n - 1 for the standard deviation).
+
+    `n`, `mean` and `sigma_total` leave out the `censored` ones; `outside_observed` has those that are known
+    to lie outside.
+    """
 
     era: int
     n: int
     mean: float | None
     sigma_total: float | None
     outside_observed: int | None
+    censored: int = 0
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -173,7 +187,7 @@ class Finding:
     reason: str  # why it is not computed, else ""
     remedy: str
     readings: int
-    censored: int
+    censored: int  # cells set aside because they name a limit alone, of all members of `each` together
     points: Points | None
     panels: tuple[Panel, ...]
     eras: tuple[Era, ...]
@@ -189,4 +203,18 @@ class Finding:
     resolution: float | None  # smallest step of the readings
     silent_since: int | None
     common_n: float | None
-    expected: Mapping[str, float]  # e.g. {"count": 3.2} smallest expected count of an attribute chart
+    doubts: tuple[str, ...]  # what differs since the limits came into force: level, spread, autocorrelation
+    at_limit: int = 0  # readings drawn at a limit they lie beyond
+    implausible: int = 0  # cells set aside as not plausible, of all members of `each` together
+
+    @property
+    def limits_now(self) -> tuple[LimitsInForce, ...]:
+        """The limits in force at the newest point, a row for each panel that has any."""
+        newest = 0 if self.points is None else len(self.points.n)
+        return tuple(row for row in self.limits if row.start_index < newest <= row.stop_index)
+
+    @property
+    def limits_waiting(self) -> tuple[LimitsInForce, ...]:
+        """The limits that no point has reached yet."""
+        newest = 0 if self.points is None else len(self.points.n)
+        return tuple(row for row in self.limits if row.start_index == row.stop_index == newest)

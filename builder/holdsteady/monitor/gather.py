@@ -7,11 +7,11 @@ from zoneinfo import ZoneInfo
 
 import numpy as np
 
-from holdsteady.arrays import Bools, Floats, Ints, frozen
+from holdsteady.arrays import Bools, Floats, Ints, Sides, frozen
 from holdsteady.intake.readings import Readings
 from holdsteady.project.settings import Characteristic
 from holdsteady.spc.subgroups import Subgroups, summarise
-from holdsteady.times import DAY, wall
+from holdsteady.times import DAY, HOUR, wall
 
 _FOUR_DAYS = 4 * DAY  # 1970-01-05 was a Monday: weeks are cut there
 
@@ -20,7 +20,8 @@ _FOUR_DAYS = 4 * DAY  # 1970-01-05 was a Monday: weeks are cut there
 class Gathered:
     """N points and what they are made of; `point_of` maps each of R values to its point.
 
-    `single` holds every single reading of a variable, flat; for count data it is the counts.
+    `single` holds every single reading of a variable, flat; for count data it is the counts. `side` and
+    `single_side` tell what is a limit drawn for a reading: -1 that it lies below, 1 above, 0 a real value.
     """
 
     time: Ints | None
@@ -32,7 +33,9 @@ class Gathered:
     era: Ints
     segment: Ints
     open: Bools
+    side: Sides
     single: Floats
+    single_side: Sides
     single_time: Ints | None
     point_of: Ints
     groups: Subgroups | None  # of subgroup charts
@@ -79,6 +82,9 @@ def gather(
     if not attribute and (width > 1 or settings.subgroup is not None):
         group_starts = np.searchsorted(point_of, np.arange(starts.size))
         groups = summarise(single, group_starts)
+    single_side = np.zeros(single.size, dtype=np.int8)
+    if readings.side is not None:
+        single_side = readings.side.reshape(-1)[present]
     labels = ("",) * starts.size if readings.subgroup is None else _take(readings.subgroup, last)
     count = _sums(single, point_of, starts.size) if attribute else None
     size = None
@@ -95,7 +101,9 @@ def gather(
         era=frozen(era),
         segment=frozen(segment.astype(np.int64)),
         open=frozen(is_open),
+        side=frozen(_side(single_side, point_of, starts.size)),
         single=frozen(single),
+        single_side=frozen(single_side),
         single_time=None if readings.time is None else frozen(np.repeat(readings.time, width)[present]),
         point_of=frozen(point_of),
         groups=groups,
@@ -120,7 +128,18 @@ def up_to(readings: Readings, as_of: int) -> Readings:
         file=readings.file[:stop],
         files=readings.files,
         line=readings.line[:stop],
+        side=None if readings.side is None else readings.side[:stop],
     )
+
+
+def _side(single_side: Sides, point_of: Ints, points: int) -> Sides:
+    """Return (N,) on which side of its limits a point's readings lie; of both, the one of most."""
+    censored = np.flatnonzero(single_side)
+    tendency = np.bincount(point_of[censored], weights=single_side[censored], minlength=points)
+    balanced = np.zeros(points, dtype=np.bool_)
+    balanced[point_of[censored]] = True
+    balanced &= tendency == 0
+    return np.where(balanced, np.int8(-1), np.sign(tendency)).astype(np.int8)
 
 
 def _cut(
@@ -164,6 +183,8 @@ def _cut_by_clock(readings: Readings, every: int, as_of: int, zone: ZoneInfo) ->
     if every < DAY:  # cut from each midnight on, so that the cuts stay at the same hours every day
         day, clock = local // DAY, local % DAY
         bucket = day * (DAY // every + 1) + clock // every
+        if every <= HOUR:  # the hour that a clock change repeats is another one
+            bucket = bucket * 2 + (np.cumsum(np.diff(local - readings.time, prepend=0) != 0) % 2)
         end = local - clock + np.minimum((clock // every + 1) * every, DAY)
     else:
         bucket = (local - _FOUR_DAYS) // every

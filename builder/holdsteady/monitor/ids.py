@@ -37,12 +37,16 @@ def slugs(names: Sequence[str]) -> list[str]:
     """
     plain = [_plain(name) for name in names]
     shared = Counter(plain)
-    return [
-        slug
-        if shared[slug] == 1 and len(slug) <= _LONGEST and not _RESERVED.fullmatch(slug)
-        else _marked(slug, name)
-        for slug, name in zip(plain, names, strict=True)
-    ]
+    kept = [shared[s] == 1 and len(s) <= _LONGEST and not _RESERVED.fullmatch(s) for s in plain]
+    taken = {slug for slug, keep in zip(plain, kept, strict=True) if keep}
+    found = []
+    for slug, name, keep in zip(plain, names, kept, strict=True):
+        marked, again = slug, 0
+        while not keep and (marked in taken or again == 0):
+            marked, again = _marked(slug, name, again), again + 1
+        taken.add(marked)
+        found.append(marked)
+    return found
 
 
 def _plain(name: str) -> str:
@@ -50,6 +54,6 @@ def _plain(name: str) -> str:
     return re.sub(r"[^a-z0-9]+", "-", text).strip("-") or "characteristic"
 
 
-def _marked(slug: str, name: str) -> str:
-    digest = hashlib.sha256(name.encode()).hexdigest()[:8]
+def _marked(slug: str, name: str, again: int) -> str:
+    digest = hashlib.sha256(name.encode() + b"\0" * again).hexdigest()[:8]
     return f"{slug[: _LONGEST - 9].rstrip('-')}-{digest}"

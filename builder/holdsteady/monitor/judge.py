@@ -13,6 +13,7 @@ from holdsteady.monitor.finding import Direction, Panel, Signal
 from holdsteady.monitor.gather import Gathered
 from holdsteady.monitor.ids import case_form, signal_id
 from holdsteady.monitor.kinds import ChartKind, sides
+from holdsteady.project.rule_sets import ZONE_RULES
 from holdsteady.project.settings import Characteristic, RuleSetting
 from holdsteady.spc.result import Lines
 from holdsteady.spc.rules import RULES, Rule, Stretches, find
@@ -21,7 +22,7 @@ _FEWEST_EXPECTED = 5.0
 _MOST_UNEQUAL = 2.0
 _DIRECTIONS: Mapping[int, Direction] = {1: "high", -1: "low", 0: "none"}
 _SHAPE_RULES = ("trend", "alternating")
-_ZONE_RULES = ("two-of-three", "four-of-five", "hugging", "avoiding-centre")
+_EXACT_RULES = (*_SHAPE_RULES, "hugging")  # those that a value further out would not meet all the more
 _USUAL = ("outside-limits", "run-one-side")
 
 
@@ -37,6 +38,7 @@ def judge(charted: Charted, lines: Mapping[str, Lines], in_baseline: Mapping[str
     """Judge every panel of a characteristic.
 
     Points that are no real values, open, missing or without limits are not judged; rules run on over them.
+    So is a point drawn at a limit, but where its reading is known to lie even further from the centre.
     """
     panels, signals = [], []
     for name, statistic in charted.kind.panels.items():
@@ -45,6 +47,7 @@ def judge(charted: Charted, lines: Mapping[str, Lines], in_baseline: Mapping[str
         judged = charted.real & ~charted.points.open & ~np.isnan(value) & has_limits
         z = np.full(value.size, np.nan)
         np.divide(value - drawn.centre, drawn.sigma, out=z, where=has_limits)
+        judged &= (charted.points.side == 0) | ((charted.points.side * z >= 0) & (name != "spread"))
         rules, refused = _rules_of(name, charted.kind, charted.settings)
         panel = Panel(
             name=name,
@@ -62,7 +65,8 @@ def judge(charted: Charted, lines: Mapping[str, Lines], in_baseline: Mapping[str
             refused_rules=refused,
         )
         met, reasons, found = _apply(charted, panel)
-        panels.append(replace(panel, met=met, refused_rules={**refused, **reasons}))
+        applied = tuple(rule for rule in rules if rule.name in met)
+        panels.append(replace(panel, rules=applied, met=met, refused_rules={**refused, **reasons}))
         signals += found
     signals.sort(key=order_of)
     return Judged(panels=tuple(panels), signals=tuple(signals))
@@ -86,6 +90,8 @@ def _apply(charted: Charted, panel: Panel) -> tuple[dict[str, Ints], dict[str, s
         if reason:
             reasons[rule.name] = reason
         where = np.flatnonzero(scope)
+        if not where.size and np.any(panel.judged):
+            continue  # it applies to no point, and `reason` says why
         found = find(
             rule,
             value=panel.value[where],
@@ -117,7 +123,7 @@ def _rules_of(
     if panel == "location":
         return tuple(asked), {}
     if kind.attribute:
-        allowed = [r for r in asked if r.name not in _ZONE_RULES]
+        allowed = [r for r in asked if r.name not in ZONE_RULES]
         reason = "zones suppose a symmetric statistic; counts are skewed"
     else:
         allowed = [r for r in asked if r.name == "outside-limits"]
@@ -139,17 +145,24 @@ def _scope(charted: Charted, rule: Rule, panel: Panel) -> tuple[Bools, Ints | No
     points never change an earlier signal.
     """
     judged = panel.judged
-    if rule.name in _SHAPE_RULES:
+    if rule.name in _EXACT_RULES:
+        judged = judged & (charted.points.side == 0)
+        left_out = int(panel.judged.sum() - judged.sum())
+        censored = f"it needs the value itself; {left_out} known only by a limit left out"
+        if rule.name not in _SHAPE_RULES:
+            return judged, None, censored if left_out else ""
         equal = _sizes_alike(charted.points)
-        left_out = int((judged & ~equal).sum())
-        reason = f"sizes vary more than 2 : 1; {left_out} points left out" if left_out else ""
-        return judged & equal, None, reason
+        unequal = int((judged & ~equal).sum())
+        sizes = f"sizes vary more than 2 : 1; {unequal} points left out"
+        reasons = [said for said, many in ((censored, left_out), (sizes, unequal)) if many]
+        return judged & equal, None, "; ".join(reasons)
     if rule.name == "run-one-side":
         counted = sides(charted.kind, charted.points, panel.centre)
         if counted is not None:
             side, expected = counted
             few = judged & (expected < _FEWEST_EXPECTED)
-            return judged, np.where(few, 0, side), "the expected count is below 5" if np.any(few) else ""
+            scope = judged if np.any(judged & ~few) else np.zeros_like(judged)
+            return scope, np.where(few, 0, side), "the expected count is below 5" if np.any(few) else ""
     return judged, None, ""
 
 

@@ -187,9 +187,10 @@ class Attribute:
 
     def fault(self, points: Gathered) -> tuple[str, str] | None:
         """Plain counts compare only when each comes from as much."""
-        if self.name in ("np", "c") and np.ptp(points.n) > 0:
+        complete = points.n[~points.open]
+        if self.name in ("np", "c") and complete.size and np.ptp(complete) > 0:
             instead = "p" if self.name == "np" else "u"
-            smallest, largest = points.n.min(), points.n.max()
+            smallest, largest = complete.min(), complete.max()
             reason = f"the size varies from {smallest:g} to {largest:g}, and {self.name} needs one size"
             return reason, f'Set chart = "{instead}"' + (", and `size`." if self.name == "c" else ".")
         return None
@@ -265,7 +266,8 @@ def choose(settings: Characteristic, points: Gathered) -> ChartKind:
 def sides(kind: ChartKind, points: Gathered, centre: Floats) -> tuple[Ints, Floats] | None:
     """Return on which side of the median each count lies, and the expected counts, both (N,).
 
-    None for variables.
+    Of a fraction, units that do not count are expected too: near 1 it is as coarse as near 0. None for
+    variables.
     """
     if not isinstance(kind, Attribute):
         return None
@@ -273,4 +275,4 @@ def sides(kind: ChartKind, points: Gathered, centre: Floats) -> tuple[Ints, Floa
     size = points.n if points.size is not None else np.ones(points.points)
     per_unit = centre / size if kind.name == "np" else centre
     side = attributes.median_side(kind.distribution, points.count, size, per_unit)
-    return side, per_unit * size
+    return side, attributes.expected(kind.distribution, size, per_unit)

@@ -1,8 +1,7 @@
 """Which points set the limits, and which limits are in force at each point.
 
 A point is judged by what was in force at its own time: given limits, else the latest adopted ones, else
-provisional ones. Nothing adopted later changes how an earlier point was judged. Each panel goes its own way,
-since the register has a line for each.
+provisional ones. Nothing adopted later changes how an earlier point was judged. Panels have a line each.
 """
 
 from __future__ import annotations
@@ -14,12 +13,13 @@ import numpy as np
 
 from holdsteady.arrays import Bools, Floats, Ints, frozen
 from holdsteady.monitor.charted import Charted
-from holdsteady.monitor.finding import Era, LimitsInForce, LimitsKind
+from holdsteady.monitor.finding import TOO_FEW, Era, LimitsInForce, LimitsKind
 from holdsteady.project.register import RegisterLine
 from holdsteady.spc.result import Estimate, Lines
 from holdsteady.times import to_microseconds
 
 FEWEST = 8  # points in an era, before there are any limits
+_NOISE = 1e-14  # of the level: a sigma this small is how numbers are written, no variation
 _KEPT = "kept from the era before"
 _LINES = ("centre", "lower", "upper", "sigma")
 
@@ -62,6 +62,7 @@ class Limits:
     lines: Mapping[str, Lines]
     in_baseline: Bools
     estimates: Mapping[int, Estimate]
+    stuck: str  # why the newest era will have no limits, though its baseline is full; else ""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -71,7 +72,8 @@ class _Learnt:
     use: Bools  # (N,) the points
     baseline: Baseline
     estimate: Estimate | None
-    enough: bool
+    enough: bool  # points, for limits
+    full: bool  # no further point will be added
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -109,7 +111,7 @@ def in_force(charted: Charted, adopted: Sequence[RegisterLine]) -> Limits:
     estimates: dict[int, Estimate] = {}
     lines = {panel: _no_lines(points.points) for panel in kind.panels}
     last: dict[str, Source | None] = dict.fromkeys(kind.panels)
-    first_panel = next(iter(kind.panels))
+    first_panel, stuck = next(iter(kind.panels)), ""
     for era in charted.eras:
         learnt = _learn(charted, era)
         if learnt.estimate is not None:
@@ -124,15 +126,17 @@ def in_force(charted: Charted, adopted: Sequence[RegisterLine]) -> Limits:
                 if start > era.start_index:
                     rows.append(_row_without_limits(charted, era, learnt, start))
                     _lay_centre(lines[panel], rows[-1])
+                stuck = rows[-1].note if start == era.stop_index and learnt.enough and learnt.full else ""
             for span in spans:
                 rows.append(_row(charted, era, panel, span))
                 _lay(charted, lines[panel], panel, span)
-            last[panel] = _at_the_end(era, spans)
+            last[panel] = _at_the_end(era, spans) or last[panel]
     return Limits(
         rows=tuple(rows),
         lines={panel: _freeze(each) for panel, each in lines.items()},
         in_baseline=frozen(in_baseline),
         estimates=estimates,
+        stuck=stuck,
     )
 
 
@@ -141,7 +145,7 @@ def _learn(charted: Charted, era: Era) -> _Learnt:
     where = np.flatnonzero(use)
     if where.size == 0:
         nothing = Baseline(points=0, first=None, last=None, excluded=0)
-        return _Learnt(use=use, baseline=nothing, estimate=None, enough=False)
+        return _Learnt(use=use, baseline=nothing, estimate=None, enough=False, full=False)
     time = charted.points.time
     return _Learnt(
         use=use,
@@ -153,6 +157,7 @@ def _learn(charted: Charted, era: Era) -> _Learnt:
         ),
         estimate=charted.kind.estimate(charted.points, charted.values, use, charted.settings),
         enough=where.size >= FEWEST,
+        full=where.size >= charted.settings.baseline.points,
     )
 
 
@@ -161,7 +166,7 @@ def _sources(
 ) -> list[Source]:
     """Return the sets that hold in an era in the order of their rank: a later one covers an earlier one.
 
-    `last` is what was in force at the end of the era before. Adopted sets rank by when they were adopted, so
+    `last` is what was in force last before the era. Adopted sets rank by when they were adopted, so
     that the latest one in force at a point is the one that counts.
     """
     sources: list[Source] = []
@@ -195,7 +200,7 @@ def _provisional(charted: Charted, era: Era, learnt: _Learnt, last: Source | Non
             return []
     elif era.action == "keep-sigma" and last is not None:
         sigma, estimator, note = last.sigma, last.estimator, "sigma kept from the era before"
-    elif not sigma:
+    elif not sigma or sigma < _NOISE * abs(estimate.centre):
         return []
     return [
         Source(
@@ -285,7 +290,10 @@ def _shown_baseline(charted: Charted, era: Era, learnt: _Learnt, spans: Sequence
 
 def _row(charted: Charted, era: Era, panel: str, span: _Span) -> LimitsInForce:
     source, points = span.source, charted.points
-    n = points.n[span.start : span.stop] if span.stop > span.start else points.n[-1:]
+    complete = span.start + np.flatnonzero(~points.open[span.start : span.stop])
+    n = points.n[complete] if complete.size else points.n[~points.open][-1:]
+    if not n.size:
+        n = points.n
     lines = _drawn(charted, panel, source, n)
     first = None if points.time is None or span.stop == span.start else int(points.time[span.start])
     return LimitsInForce(
@@ -294,6 +302,8 @@ def _row(charted: Charted, era: Era, panel: str, span: _Span) -> LimitsInForce:
         kind=source.kind,
         start_index=span.start,
         stop_index=span.stop,
+        at_index=int(complete[-1]) if complete.size else None,
+        limited=True,
         in_force_from=source.from_time if source.from_time is not None else (era.from_time or first),
         centre=_common(lines.centre),
         sigma=None if charted.kind.attribute else source.sigma,
@@ -322,7 +332,7 @@ def _row_without_limits(charted: Charted, era: Era, learnt: _Learnt, stop: int) 
     here = slice(era.start_index, era.stop_index)
     known = charted.values[panel][here][charted.usable[here]]
     centre = float(np.median(known)) if known.size else None
-    estimator, note = "median", "too few points"
+    estimator, note = "median", TOO_FEW
     if learnt.enough and learnt.estimate is not None:
         centre, estimator = learnt.estimate.centre, learnt.estimate.estimator
         note = learnt.estimate.finding or "no variation in the baseline"
@@ -332,6 +342,8 @@ def _row_without_limits(charted: Charted, era: Era, learnt: _Learnt, stop: int) 
         kind="provisional",
         start_index=era.start_index,
         stop_index=stop,
+        at_index=None,
+        limited=False,
         in_force_from=era.from_time or learnt.baseline.first,
         centre=centre,
         sigma=None,

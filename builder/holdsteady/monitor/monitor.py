@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections import Counter
 from collections.abc import Callable, Sequence
 from dataclasses import replace
 
@@ -13,25 +14,20 @@ from holdsteady.monitor.cases import Outside, cases
 from holdsteady.monitor.charted import Charted
 from holdsteady.monitor.context import Context
 from holdsteady.monitor.eras import changes, eras
-from holdsteady.monitor.finding import Calculation, Era, Finding, LevelSummary, Panel, Points
+from holdsteady.monitor.finding import Calculation, Era, Finding, LevelSummary, LimitsInForce, Panel, Points
 from holdsteady.monitor.gather import gather, up_to
 from holdsteady.monitor.ids import slugs
 from holdsteady.monitor.judge import judge
-from holdsteady.monitor.kinds import choose, sides
+from holdsteady.monitor.kinds import choose
 from holdsteady.monitor.limits import Limits, in_force
 from holdsteady.monitor.matching import concerns, excluded_points
-from holdsteady.monitor.state import flags, outside_specification, silent_since, state
+from holdsteady.monitor.state import flags, limits_doubts, outside_specification, silent_since, state
 from holdsteady.project.load import Project
 from holdsteady.project.logbook import LogbookEntry
-from holdsteady.project.settings import Characteristic
+from holdsteady.project.settings import Characteristic, Specification
 from holdsteady.spc import doubt
 from holdsteady.spc.attributes import overdispersion
 from holdsteady.times import to_microseconds
-
-_NO_DATA = (
-    "no file has a usable reading of it",
-    "Look on the data page at what its source's files were read as.",
-)
 
 
 def monitor_all(
@@ -49,13 +45,32 @@ def monitor_all(
         members = [member for member in known if member.line.size]
         censored = intake.censored.get(characteristic.id, 0)
         if not members:
-            found.append(not_computed(characteristic, *_NO_DATA, censored=censored))
+            found.append(not_computed(characteristic, *_no_data(characteristic, intake), censored=censored))
         for readings in members:
             found.append(_safely(readings, characteristic, context, censored))
             if progress is not None:
                 progress("computing", len(found), total)
     names = slugs([finding.name for finding in found])
-    return tuple(replace(finding, slug=slug) for finding, slug in zip(found, names, strict=True))
+    return tuple(
+        replace(finding, slug=slug, implausible=intake.implausible.get(finding.settings.id, 0))
+        for finding, slug in zip(found, names, strict=True)
+    )
+
+
+def _no_data(settings: Characteristic, intake: Intake) -> tuple[str, str]:
+    """Return why a characteristic has no reading, as far as its columns tell, and the remedy."""
+    files = {account.file for account in intake.files if account.source == settings.source}
+    asked = {settings.value, settings.count, settings.size, *(settings.values or ())}
+    reasons = Counter(a.reason for a in intake.set_aside if a.column in asked and a.file in files)
+    what = "no file has a usable reading of it"
+    if not files:
+        return "no file matches the `files` of its source", "Correct `files`, or wait for the first file."
+    if reasons:
+        commonest, times = reasons.most_common(1)[0]
+        return f"{what}; {times} set aside: {commonest}", "Look on the data page at what was set aside."
+    if settings.where:
+        return what, "Check `where` against the files: no row may pass it."
+    return what, "Look on the data page at what its source's files were read as."
 
 
 def context_of(project: Project, as_of: int) -> Context:
@@ -73,9 +88,14 @@ def context_of(project: Project, as_of: int) -> Context:
 
 def _safely(readings: Readings, settings: Characteristic, context: Context, censored: int) -> Finding:
     try:
-        return monitor(readings, settings, context, censored=censored)
+        with np.errstate(over="raise"):
+            return monitor(readings, settings, context, censored=censored)
+    except FloatingPointError:
+        what = "its readings are too large to compute with"
+        remedy = "Set `plausible` bounds, so that what no gauge can read is set aside."
+        return not_computed(settings, what, remedy, readings=readings, censored=censored)
     except Exception as error:
-        what = f"computing it failed: {error or type(error).__name__}"
+        what = f"computing it failed: {str(error) or type(error).__name__}"
         remedy = "Check its settings against its data; if both are right, report this text."
         return not_computed(settings, what, remedy, readings=readings, censored=censored)
 
@@ -111,7 +131,7 @@ def not_computed(
         resolution=None,
         silent_since=None,
         common_n=None,
-        expected={},
+        doubts=(),
     )
 
 
@@ -149,7 +169,8 @@ def _compute(
     if (fault := kind.fault(points)) is not None:
         return not_computed(settings, *fault, readings=readings, censored=censored)
     excluded, faulty = excluded_points(entries, points.time, points.points)
-    values = kind.values(points, ~faulty)
+    real_value = ~faulty & (points.side == 0)
+    values = kind.values(points, real_value)
     charted = Charted(
         name=readings.name,
         settings=settings,
@@ -161,7 +182,7 @@ def _compute(
         entries=entries,
         excluded=frozen(excluded),
         real=frozen(~faulty),
-        usable=frozen(~excluded & ~faulty & ~points.open & ~np.isnan(next(iter(values.values())))),
+        usable=frozen(~excluded & real_value & ~points.open & ~np.isnan(next(iter(values.values())))),
     )
     return _conclude(charted, readings, censored)
 
@@ -170,28 +191,34 @@ def _conclude(charted: Charted, readings: Readings, censored: int) -> Finding:
     """Work out limits, signals, cases and state of a chart, and put it all together."""
     settings, context, points, kind = charted.settings, charted.context, charted.points, charted.kind
     adopted = [
-        line for line in context.register if line.characteristic == charted.name and line.chart == kind.name
+        line
+        for line in context.register
+        if line.characteristic == charted.name
+        and line.chart == kind.name
+        and (kind.attribute or (line.sigma is not None and line.sigma > 0))
     ]
     limits = in_force(charted, adopted)
     judged = judge(charted, limits.lines, _baseline_by_panel(charted, limits.in_baseline))
     outside = None
     if not kind.attribute:
-        outside = outside_specification(points.single, points.single_time, settings.specification, context)
+        outside = outside_specification(points, settings.specification, context)
     panels = {panel.name: panel for panel in judged.panels}
     found, signals = cases(charted, judged.signals, panels, _per_point(charted, outside))
-    resolution = None if kind.attribute else doubt.resolution(points.single)
+    resolution = None if kind.attribute else doubt.resolution(points.single[_told(charted)])
     silent = silent_since(settings, None if points.time is None else int(points.time[-1]), context)
     known = points.n[~points.open]
+    now = [row for row in limits.rows if row.start_index < points.points <= row.stop_index]
+    doubts = limits_doubts(charted, judged.panels[0], now)
     return Finding(
         name=charted.name,
         slug="",
         title=_title(settings, readings),
         settings=settings,
         chart=kind.name,
-        state=state(found, limits.rows, points, silent, context),
-        flags=flags(charted, judged.panels, limits.rows, outside, resolution),
-        reason="",
-        remedy="",
+        state="not-computed" if limits.stuck else state(found, limits.rows, points, silent, context),
+        flags=flags(charted, now, outside, doubts, resolution),
+        reason=limits.stuck,
+        remedy="Give `limits`, or a `baseline` that holds some variation." if limits.stuck else "",
         readings=int(readings.line.size),
         censored=censored,
         points=_points(charted),
@@ -201,15 +228,16 @@ def _conclude(charted: Charted, readings: Readings, censored: int) -> Finding:
         signals=signals,
         cases=found,
         logbook=charted.entries,
-        specification=settings.specification,
-        calculation=_calculation(limits, charted.eras),
+        specification=_specification(settings, context),
+        calculation=_calculation(limits, charted.eras, now),
         summaries=_summaries(charted, outside),
         overdispersion=_overdispersion(charted, judged.panels[0]),
         sigma_ratio=_sigma_ratio(charted, limits),
         resolution=resolution,
         silent_since=silent,
         common_n=float(known[0]) if known.size and np.ptp(known) == 0 else None,
-        expected=_expected(charted, judged.panels[0]),
+        doubts=doubts,
+        at_limit=int(np.count_nonzero(points.single_side)),
     )
 
 
@@ -221,6 +249,8 @@ def _entries(
         entry
         for entry in logbook
         if concerns(entry, name=readings.name, family=readings.family, gauge=settings.gauge, cases=cases)
+        # Without times a line meets no point; a case it can still name.
+        and (readings.time is not None or entry.kind == "note" or entry.case in cases)
     ]
     return tuple(sorted(mine, key=lambda entry: (entry.when, entry.line)))
 
@@ -246,6 +276,7 @@ def _points(charted: Charted) -> Points:
         excluded=charted.excluded,
         faulty=frozen(~charted.real),
         open=points.open,
+        side=points.side,
     )
 
 
@@ -270,12 +301,38 @@ def _per_point(charted: Charted, outside: Bools | None) -> Outside:
     return Outside(by_point=by_point, readings=readings)
 
 
-def _calculation(limits: Limits, spans: Sequence[Era]) -> tuple[Calculation, ...]:
-    """Return how the newest era's limits come about; nothing where they are not estimated here."""
+def _specification(settings: Characteristic, context: Context) -> tuple[Specification, ...]:
+    """Return what was wanted until now; what is yet to come does not count."""
+    return tuple(
+        wanted
+        for wanted in settings.specification
+        if wanted.from_ is None or to_microseconds(wanted.from_, context.zone) <= context.as_of
+    )
+
+
+def _told(charted: Charted) -> Bools:
+    """Return which single readings are real values (V,): no measurement fault, not drawn at a limit."""
+    points = charted.points
+    told: Bools = charted.real[points.point_of] & (points.single_side == 0)
+    return told
+
+
+def _calculation(
+    limits: Limits, spans: Sequence[Era], now: Sequence[LimitsInForce]
+) -> tuple[Calculation, ...]:
+    """Return how limits come about from the newest era's baseline, and whether those are in force."""
     estimate = limits.estimates.get(spans[-1].number)
     if estimate is None:
         return ()
-    return (Calculation(method=estimate.estimator, figures=estimate.figures, source=estimate.source),)
+    own = [row.limited and row.kind == "provisional" and "kept" not in row.note for row in now]
+    calculation = Calculation(
+        method=estimate.estimator,
+        in_force=bool(own) and all(own),
+        points=estimate.points,
+        figures=estimate.figures,
+        source=estimate.source,
+    )
+    return (calculation,)
 
 
 def _summaries(charted: Charted, outside: Bools | None) -> tuple[LevelSummary, ...]:
@@ -287,7 +344,8 @@ def _summaries(charted: Charted, outside: Bools | None) -> tuple[LevelSummary, .
     found = []
     for era in charted.eras:
         here = kept & (points.point_of >= era.start_index) & (points.point_of < era.stop_index)
-        single = points.single[here]
+        told = here & (points.single_side == 0)
+        single = points.single[told]
         found.append(
             LevelSummary(
                 era=era.number,
@@ -295,16 +353,20 @@ def _summaries(charted: Charted, outside: Bools | None) -> tuple[LevelSummary, .
                 mean=float(single.mean()) if single.size else None,
                 sigma_total=float(single.std(ddof=1)) if single.size > 1 else None,
                 outside_observed=None if outside is None else int(outside[here].sum()),
+                censored=int(here.sum() - told.sum()),
             )
         )
     return tuple(found)
 
 
 def _overdispersion(charted: Charted, panel: Panel) -> float | None:
+    """Return sigma_z of the newest era: of its baseline, or of all its points where limits were given."""
     if charted.kind.name not in ("p", "u"):
         return None
-    use = charted.usable & panel.in_baseline & ~np.isnan(panel.z)
-    return overdispersion(panel.z, use, charted.points.segment)
+    points = charted.points
+    mine = charted.usable & ~np.isnan(panel.z) & (points.era == points.era[-1])
+    baseline = mine & panel.in_baseline
+    return overdispersion(panel.z, baseline if np.any(baseline) else mine, points.segment)
 
 
 def _sigma_ratio(charted: Charted, limits: Limits) -> float | None:
@@ -315,11 +377,3 @@ def _sigma_ratio(charted: Charted, limits: Limits) -> float | None:
     if not estimate.sigma or estimate.overall_sigma is None:
         return None
     return estimate.overall_sigma / estimate.sigma
-
-
-def _expected(charted: Charted, panel: Panel) -> dict[str, float]:
-    """Return the smallest expected count of an attribute chart."""
-    counted = sides(charted.kind, charted.points, panel.centre)
-    if counted is None or not np.any(panel.judged):
-        return {}
-    return {"count": float(counted[1][panel.judged].min())}

@@ -6,7 +6,7 @@ from collections.abc import Sequence
 
 import numpy as np
 
-from holdsteady.arrays import Bools, Floats, Ints
+from holdsteady.arrays import Bools, Ints
 from holdsteady.monitor.charted import Charted
 from holdsteady.monitor.context import Context
 from holdsteady.monitor.finding import Case, LimitsInForce, Panel, State
@@ -34,8 +34,7 @@ def state(
         return "signalling"
     if silent_since is not None:
         return "silent"
-    newest = [row for row in limits if row.start_index < points.points <= row.stop_index]
-    if not any(row.lower is not None or row.upper is not None or row.varies for row in newest):
+    if not any(row.limited and row.start_index < points.points <= row.stop_index for row in limits):
         return "gathering"
     if any(case.state == "answered" and _recent(case, points, context) for case in cases):
         return "answered"
@@ -51,11 +50,15 @@ def silent_since(settings: Characteristic, last_time: int | None, context: Conte
 
 
 def outside_specification(
-    single: Floats, time: Ints | None, specification: Sequence[Specification], context: Context
+    points: Gathered, specification: Sequence[Specification], context: Context
 ) -> Bools | None:
-    """Return which single readings lie outside the specification of their day (V,); None without one."""
+    """Return which single readings lie outside the specification of their day (V,); None without one.
+
+    Of a reading drawn at a limit it is known only that it lies even further out on that side.
+    """
     if not specification:
         return None
+    single, side, time = points.single, points.single_side, points.single_time
     outside = np.zeros(single.size, dtype=np.bool_)
     starts = [None if s.from_ is None else to_microseconds(s.from_, context.zone) for s in specification]
     for index, wanted in enumerate(specification):
@@ -66,74 +69,79 @@ def outside_specification(
             if index + 1 < len(starts) and (stop := starts[index + 1]) is not None:
                 here &= time < stop
         if wanted.lower is not None:
-            outside |= here & (single < wanted.lower)
+            outside |= here & (single < wanted.lower) & (side <= 0)
         if wanted.upper is not None:
-            outside |= here & (single > wanted.upper)
+            outside |= here & (single > wanted.upper) & (side >= 0)
     return outside
 
 
 def flags(
     charted: Charted,
-    panels: Sequence[Panel],
-    limits: Sequence[LimitsInForce],
+    now: Sequence[LimitsInForce],
     outside: Bools | None,
+    doubts: Sequence[str],
     resolution: float | None,
 ) -> tuple[str, ...]:
     """Return what stands beside the state, in the order of the contract.
 
-    `outside` (V,) says which single readings lie outside the specification, `resolution` is their step.
+    `now` are the limits in force at the newest point, `outside` (V,) says which single readings lie outside
+    the specification, `doubts` what differs since the limits came into force, `resolution` is the readings'
+    step.
     """
     points = charted.points
-    newest = [row for row in limits if row.start_index < points.points <= row.stop_index]
     found = []
     if outside is not None:
         recent = _within_attention(points.single_time, outside, charted.context)
         if np.any(outside & charted.real[points.point_of] & recent):
             found.append("outside-specification")
-    if newest and all(row.kind == "provisional" for row in newest):
+    limited = [row for row in now if row.limited]
+    if limited and all(row.kind == "provisional" for row in limited):
         found.append("provisional-limits")
-    if newest and _limits_doubtful(charted, panels[0], newest[0]):
+    if doubts:
         found.append("doubtful-limits")
-    if newest and _gauge_doubtful(charted, panels, newest, resolution):
+    if now and _gauge_doubtful(charted, now, resolution):
         found.append("doubtful-gauge")
     return tuple(found)
+
+
+def limits_doubts(charted: Charted, panel: Panel, now: Sequence[LimitsInForce]) -> tuple[str, ...]:
+    """Return in what the points since the limits came into force differ from those that set them, in words.
+
+    `panel` is the one of the location, or the only one.
+    """
+    row = next((row for row in now if row.panel == panel.name and row.limited), None)
+    if row is None:
+        return ()
+    points = charted.points
+    mine = (points.era == row.era) & panel.judged & ~charted.excluded & (points.side == 0)
+    baseline = mine & panel.in_baseline
+    since = mine & ~panel.in_baseline
+    since[: row.start_index] = False
+    if not np.any(baseline):
+        return ()
+    # Both on one scale, whatever limits were in force: deviations of equal precision from one level.
+    deviation = (panel.value - np.mean(panel.value[baseline])) * np.sqrt(points.n)
+    return compare(deviation[baseline], deviation[since]).reasons
 
 
 def _within_attention(time: Ints | None, like: Bools, context: Context) -> Bools:
     if time is None:
         return np.ones(like.size, dtype=np.bool_)
-    return np.asarray(time > context.as_of - context.attention)
+    return np.asarray(time >= context.as_of - context.attention)
 
 
-def _limits_doubtful(charted: Charted, panel: Panel, row: LimitsInForce) -> bool:
-    """Whether the points since the limits came into force differ from those they were estimated from."""
-    mine = (charted.points.era == row.era) & panel.judged & ~charted.excluded
-    baseline = mine & panel.in_baseline
-    since = mine & ~panel.in_baseline
-    since[: row.start_index] = False
-    if not np.any(baseline):
-        return False
-    # Both on one scale, whatever limits were in force: deviations of equal precision from one level.
-    deviation = (panel.value - np.mean(panel.value[baseline])) * np.sqrt(charted.points.n)
-    return compare(deviation[baseline], deviation[since]).doubtful
-
-
-def _gauge_doubtful(
-    charted: Charted,
-    panels: Sequence[Panel],
-    newest: Sequence[LimitsInForce],
-    resolution: float | None,
-) -> bool:
+def _gauge_doubtful(charted: Charted, now: Sequence[LimitsInForce], resolution: float | None) -> bool:
     """Whether the gauge is too coarse, or was found faulty of late."""
     context, gauge = charted.context, charted.settings.gauge
-    sigma = next((row.sigma for row in newest if row.sigma), None)
+    sigma = next((row.sigma for row in now if row.sigma), None)
     if resolution is not None and sigma is not None and resolution > sigma:
         return True
-    for panel in panels:
-        if panel.statistic in ("range", "moving-range"):
-            known = panel.value[(charted.points.era == newest[0].era) & ~np.isnan(panel.value)]
-            if known.size >= FEWEST and np.mean(known == 0) > _ZERO_RANGES:
-                return True
+    ranges = charted.values.get("spread")  # where the spread is s, it is zero with the range
+    if ranges is not None:
+        told = (charted.points.era == now[0].era) & charted.real & (charted.points.side == 0)
+        known = ranges[told & ~np.isnan(ranges)]
+        if known.size >= FEWEST and np.mean(known == 0) > _ZERO_RANGES:
+            return True
     return bool(gauge) and any(
         entry.kind == "measurement-fault"
         and entry.gauge == gauge

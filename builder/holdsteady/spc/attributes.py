@@ -38,10 +38,10 @@ def estimate(
         points=int(used.sum()),
         dof=None,
         overall_sigma=None,
-        figures=(("sum of counts", total, False), (units_name, units, False), (name, centre, False))
+        figures=(("sum of counts", total, False), (units_name, units, False), (name, centre, binomial))
         if used.any()
         else (),
-        source="Shewhart 1931; ISO 7870-2:2013",
+        source="ISO 7870-2:2013; three-sigma limits: Shewhart 1931",
         finding=finding,
     )
 
@@ -111,16 +111,14 @@ def _binomial_below(count: Floats, size: Floats, probability: Floats) -> Floats:
     return below
 
 
-def smallest_expected(kind: Distribution, size: Floats, centre: Floats | float) -> float:
-    """Return the smallest expected count over the points; NaN without any.
+def expected(kind: Distribution, size: Floats, centre: Floats | float) -> Floats:
+    """Return the expected count of each point (N,).
 
-    For "binomial" also of units that are not counted: a fraction near 1 is as coarse as one near 0.
+    For "binomial" that of the units that are not counted, where it is smaller: a fraction near 1 is as coarse
+    as one near 0.
     """
-    expected = size * centre
-    if kind == "binomial":
-        expected = np.minimum(expected, size - expected)
-    known = expected[~np.isnan(expected)]
-    return float(known.min()) if len(known) else math.nan
+    counted = size * centre
+    return np.minimum(counted, size - counted) if kind == "binomial" else counted
 
 
 def overdispersion(z: Floats, use: Bools, segment: Ints | None = None) -> float | None:

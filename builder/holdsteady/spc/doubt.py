@@ -11,6 +11,7 @@ from scipy.special import fdtr, fdtrc, ndtr, stdtr
 from holdsteady.arrays import Floats
 
 LEVEL = 0.001  # of each test
+_LARGEST = 1e100  # beyond it counting decimals overflows, and no gauge reads so
 RECENT_AT_LEAST = 30
 BASELINE_AT_LEAST = 8
 
@@ -91,7 +92,7 @@ def resolution(values: Floats) -> float | None:
     float, or None where the readings are all equal, or so fine that the step drowns in rounding.
     """
     known = values[np.isfinite(values)]
-    if len(known) < 2 or np.ptp(known) == 0:
+    if len(known) < 2 or np.ptp(known) == 0 or np.abs(known).max() > _LARGEST:
         return None
     decimals = _decimals(known)
     if decimals is not None:

@@ -2,8 +2,9 @@
 
 References
 ----------
-Shewhart, W. A. (1931), Economic Control of Quality of Manufactured Product, chapters 18 to 20.
-ISO 7870-2:2013. Burr, I. W. (1969), Journal of Quality Technology 1(3), 163-167 (unequal sizes).
+Shewhart, W. A. (1931), Economic Control of Quality of Manufactured Product (three-sigma limits).
+ISO 7870-2:2013. Tippett, L. H. C. (1925), Biometrika 17, 364-387 (d2, d3). Burr, I. W. (1969), Journal of
+Quality Technology 1(3), 163-167 (unequal sizes).
 """
 
 from __future__ import annotations

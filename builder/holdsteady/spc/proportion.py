@@ -2,7 +2,8 @@
 
 References
 ----------
-Shewhart, W. A. (1931), Economic Control of Quality of Manufactured Product. ISO 7870-2:2013.
+ISO 7870-2:2013. Shewhart, W. A. (1931), Economic Control of Quality of Manufactured Product (the idea of
+three-sigma limits).
 """
 
 from __future__ import annotations
