@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import Any
 
 import numpy as np
@@ -144,6 +145,7 @@ def finding(
                 outside_specification=0 if two else None,
                 readings=90,
                 good_way=False,
+                gross=False,
             ),
         )
     settings = Characteristic(
@@ -196,6 +198,7 @@ def finding(
         excluded=index == 30,
         faulty=index == 31,
         open=index < 0,
+        side=np.zeros(n, dtype=np.int8),
     )
     empty = state in ("not-computed",)
     rows = tuple(
@@ -203,6 +206,8 @@ def finding(
             era=1,
             panel=p.name,
             kind="adopted",
+            at_index=n - 1,
+            limited=True,
             start_index=0,
             stop_index=n,
             in_force_from=AS_OF - 100 * HOUR,
@@ -224,6 +229,12 @@ def finding(
         )
         for p in panels
     )
+    if state == "gathering":
+        few: dict[str, Any] = {"kind": "provisional", "limited": False, "estimator": "median"}
+        few |= dict.fromkeys(("lower", "upper", "sigma", "adopted_at", "in_force_from"))
+        rows = (
+            replace(rows[0], points=min(n, 7), excluded=0, note="too few points", reason="", by="", **few),
+        )
     return Finding(
         name=identifier,
         slug=identifier.replace("[", "-").replace("=", "-").replace("]", ""),
@@ -249,6 +260,8 @@ def finding(
         calculation=(
             Calculation(
                 method="sigma = mean range / d2",
+                in_force=False,
+                points=25,
                 figures=(
                     ("mean range", 0.0187, True),
                     ("d2 for n = 5", 2.326, False),
@@ -263,7 +276,7 @@ def finding(
         resolution=0.001,
         silent_since=int(time[-1]) if time is not None and state == "silent" else None,
         common_n=None if chart in ("individuals", "p", "u") else 5.0,
-        expected={},
+        doubts=(),
     )
 
 
@@ -302,7 +315,7 @@ def all_findings() -> tuple[Finding, ...]:
             area="Inspection",
             unit="",
             state="gathering",
-            n=20,
+            n=5,
             timed=False,
             seed=8,
         ),

@@ -69,7 +69,7 @@ class TestProcess:
         project = small_project(tmp_path / "p")
         done = holdsteady("check", project)
         assert done.returncode == 0, done.stderr
-        assert done.stdout.splitlines()[1].split() == ["press/march.csv", "120", "120", "0", "0", "0", "0"]
+        assert done.stdout.splitlines()[2].split() == ["press/march.csv", "120", "120", "0", "0", "0", "0"]
         assert not (project / "site").exists()
 
 
@@ -120,7 +120,7 @@ class TestExitCodes:
         def fail(*_: object, **__: object) -> None:
             raise RuntimeError("no luck")
 
-        monkeypatch.setattr("holdsteady.build.render", fail)
+        monkeypatch.setattr("holdsteady.build.draw", fail)
         assert cli.run(["build", str(project)]) == 5
         lines = capsys.readouterr().err.splitlines()
         assert lines[0] == "holdsteady failed: RuntimeError: no luck"
@@ -136,7 +136,7 @@ class TestExitCodes:
         def interrupt(*_: object, **__: object) -> None:
             raise KeyboardInterrupt
 
-        monkeypatch.setattr("holdsteady.build.render", interrupt)
+        monkeypatch.setattr("holdsteady.build.draw", interrupt)
         assert cli.run(["build", str(project)]) == 130
         assert "still stands" in capsys.readouterr().err
 

@@ -87,7 +87,7 @@ def test_the_wheel_holds_the_package_templates_and_sample_and_nothing_else(wheel
     for name in ("py.typed", "cli.py", "site_templates/layout.html", "sample_project/holdsteady.toml"):
         assert f"holdsteady/{name}" in names
     assert any(name.startswith("holdsteady/site_templates/vendor/LICENSE") for name in names)
-    for unwanted in ("/sample_project/site/", "/.holdsteady/", "__pycache__", "/tests/"):
+    for unwanted in ("/sample_project/site/", "/.holdsteady/", "__pycache__", "/tests/", "/refresh.py"):
         assert not [name for name in names if unwanted in f"/{name}"], unwanted
 
 

@@ -7,7 +7,7 @@ import stat
 import time
 from collections.abc import Callable, Iterator, Mapping, Sequence
 from contextlib import contextmanager
-from dataclasses import asdict, dataclass
+from dataclasses import asdict, dataclass, replace
 from pathlib import Path
 
 import numpy as np
@@ -16,9 +16,11 @@ import xxhash
 from holdsteady import __version__
 from holdsteady.intake.read import read
 from holdsteady.intake.readings import Intake
+from holdsteady.monitor.arrivals import arrivals, spans_of
 from holdsteady.monitor.finding import Finding
 from holdsteady.monitor.matching import concerns
-from holdsteady.monitor.monitor import monitor_all
+from holdsteady.monitor.monitor import context_of, monitor_all
+from holdsteady.monitor.register_use import unused
 from holdsteady.problems import Problem, SettingsError, Severity
 from holdsteady.project.faults import SETTINGS_FILE
 from holdsteady.project.load import LOGBOOK_FILE, REGISTER_FILE, Project, load_project
@@ -26,7 +28,7 @@ from holdsteady.project.logbook import LogbookEntry
 from holdsteady.project.output_folder import output_fault
 from holdsteady.publish import held
 from holdsteady.report import Report, counted
-from holdsteady.site.render import render
+from holdsteady.site.render import draw
 from holdsteady.site.tables import build_json, tables
 from holdsteady.site.view import SiteView
 from holdsteady.times import iso, to_microseconds
@@ -37,6 +39,14 @@ _BLOCK = 1 << 20
 
 Progress = Callable[[str, int, int], None]
 """Told the stage, how much of it is done, and how much there is (0: not known)."""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class _Moment:
+    """What a build stands at, microseconds UTC, and whether the clock decided it."""
+
+    at: int
+    by_clock: bool
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -79,7 +89,7 @@ def build(
     moment = _moment(project, as_of)
     with held(target) as site:
         computed = _compute(project, moment, seconds, progress)
-        files = _site(computed, seconds, progress)
+        computed, files = _site(computed, seconds, progress)
         with _timed(seconds, "publishing", progress):
             published = site.publish(files)
     return _report(computed, seconds, site.folder / INDEX, len(published.written))
@@ -92,7 +102,7 @@ def check(
     seconds: dict[str, float] = {}
     project = load_project(folder)
     computed = _compute(project, _moment(project, as_of), seconds, progress)
-    _site(computed, seconds, progress)
+    computed, _ = _site(computed, seconds, progress, keep=False)
     return _report(computed, seconds, None, 0)
 
 
@@ -108,12 +118,17 @@ def unmatched(
         and entry.line not in matched
         # A characteristic that is not computed carries no lines, yet a line may name it.
         and not any(
-            concerns(entry, name=f.name, family=f.settings.id, gauge=f.settings.gauge) for f in findings
+            concerns(entry, name=f.name, family=f.settings.id, gauge=f.settings.gauge)
+            for f in findings
+            if f.points is None
         )
     )
 
 
-def _compute(project: Project, as_of: int, seconds: dict[str, float], progress: Progress | None) -> _Computed:
+def _compute(
+    project: Project, moment: _Moment, seconds: dict[str, float], progress: Progress | None
+) -> _Computed:
+    as_of = moment.at
     with _timed(seconds, "reading"):
         intake = read(project.folder, project.settings, as_of=as_of, zone=project.zone, progress=progress)
         if not intake.files:
@@ -127,14 +142,19 @@ def _compute(project: Project, as_of: int, seconds: dict[str, float], progress: 
             )
     with _timed(seconds, "computing"):
         findings = monitor_all(intake, project, as_of=as_of, progress=progress)
-    problems = (*project.problems, *intake.problems, *map(_not_computed, _without_chart(findings)))
+    register = [line for line in project.register.lines if line.adopted_at <= as_of]
+    told = (*project.problems, *intake.problems, *unused(findings, register, REGISTER_FILE))
+    problems = (*told, *map(_not_computed, _without_chart(findings)))
     view = SiteView(
         settings=project.settings.site,
         as_of=as_of,
         data_until=_data_until(findings),
-        problems=(*project.problems, *intake.problems),
+        problems=told,
         register_check=project.register.last_check,
         unmatched=unmatched(findings, project.logbook.entries, as_of),
+        # Where a past moment was asked for, what was entered since is no fault.
+        ahead=tuple(e for e in project.logbook.entries if e.entered > as_of) if moment.by_clock else (),
+        arrivals=arrivals(findings, spans_of(intake.readings, as_of), context_of(project, as_of)),
     )
     return _Computed(
         project=project,
@@ -145,17 +165,29 @@ def _compute(project: Project, as_of: int, seconds: dict[str, float], progress: 
     )
 
 
-def _site(computed: _Computed, seconds: dict[str, float], progress: Progress | None) -> dict[str, bytes]:
-    """Return every file of the site."""
-    project, intake, findings = computed.project, computed.intake, computed.findings
+def _site(
+    computed: _Computed, seconds: dict[str, float], progress: Progress | None, *, keep: bool = True
+) -> tuple[_Computed, dict[str, bytes]]:
+    """Return what was computed, as it could be shown, and every file of the site.
+
+    `keep` says whether what was compiled may be kept in the project.
+    """
+    project, intake = computed.project, computed.intake
     with _timed(seconds, "pages", progress):
-        files = render(findings, intake, computed.view, cache=project.folder / CACHE)
+        drawn = draw(computed.findings, intake, computed.view, cache=project.folder / CACHE, keep=keep)
+    computed = _as_drawn(computed, drawn.findings)
     with _timed(seconds, "tables", progress):
         recent = project.settings.site.points == "recent"
-        files |= tables(findings, intake, zone=project.zone, recent=recent)
+        files = drawn.files | tables(computed.findings, intake, zone=project.zone, recent=recent)
         digest = _input_digest(project.folder, intake)
     files["tables/build.json"] = build_json(_about(computed, digest, seconds))
-    return files
+    return computed, files
+
+
+def _as_drawn(computed: _Computed, findings: tuple[Finding, ...]) -> _Computed:
+    """Return what was computed with the findings as pages show them, and what that adds to the problems."""
+    problems = (*computed.problems, *map(_not_computed, _without_chart(findings)))
+    return replace(computed, findings=findings, problems=tuple(dict.fromkeys(problems)))
 
 
 def _about(computed: _Computed, digest: str, seconds: Mapping[str, float]) -> dict[str, object]:
@@ -208,9 +240,10 @@ def _output(project: Project, out: Path | None) -> Path:
     return out
 
 
-def _moment(project: Project, as_of: dt.datetime | dt.date | None) -> int:
-    chosen = as_of or project.settings.site.as_of or dt.datetime.now(dt.UTC)
-    return to_microseconds(chosen, project.zone)
+def _moment(project: Project, as_of: dt.datetime | dt.date | None) -> _Moment:
+    chosen = as_of or project.settings.site.as_of
+    at = to_microseconds(chosen or dt.datetime.now(dt.UTC), project.zone)
+    return _Moment(at=at, by_clock=chosen is None)
 
 
 def _data_until(findings: Sequence[Finding]) -> int | None:
@@ -241,6 +274,10 @@ def _report(computed: _Computed, seconds: Mapping[str, float], index: Path | Non
         seconds=dict(seconds),
         index=index,
         written=written,
+        set_aside=computed.intake.set_aside,
+        unmatched=computed.view.unmatched,
+        arrivals=computed.view.arrivals,
+        zone=computed.project.zone,
     )
 
 

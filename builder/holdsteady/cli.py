@@ -69,6 +69,25 @@ def commands() -> None:
 
 
 @commands.command()
+@click.argument("folder", type=click.Path())
+@_debug
+def start(folder: str) -> int:
+    """Look through FOLDER and write a `holdsteady.toml` that builds as it is, with a comment for each guess.
+
+    Prints what was seen, what was guessed from it and how sure that is. Nothing is ever overwritten.
+    """
+    from pathlib import Path  # noqa: PLC0415  `--help` need not wait for these
+
+    from holdsteady import console  # noqa: PLC0415
+    from holdsteady.start.start import start as run  # noqa: PLC0415
+
+    with console.progress() as progress:
+        started = run(Path(folder), progress=progress)
+    console.print_started(started)
+    return 0
+
+
+@commands.command()
 @_project
 @click.option(
     "--out",
@@ -116,7 +135,7 @@ def check(project: str, as_of: dt.datetime | dt.date | None) -> int:
 
     with console.progress() as progress:
         report = run(Path(project), as_of=as_of, progress=progress)
-    console.print_accounts(report.files)
+    console.print_accounting(report)
     console.print_all(report.problems)
     console.print_summary(report)
     return report.exit_code()

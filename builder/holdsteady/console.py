@@ -3,18 +3,18 @@
 from __future__ import annotations
 
 import dataclasses
+import shlex
 import sys
 from collections.abc import Callable, Iterator, Sequence
 from contextlib import contextmanager
 from typing import TYPE_CHECKING, TextIO
 
 if TYPE_CHECKING:
-    from holdsteady.intake.readings import FileAccount
     from holdsteady.problems import HoldsteadyError, Problem
     from holdsteady.report import Counts, Report
+    from holdsteady.start.start import Started
 
 _SHOWN = 20  # problems; the data page lists them all
-_OUTCOMES = ("rows", "used", "filtered", "repeated", "corrected", "set aside")
 _STATES = ("signalling", "answered", "silent", "gathering", "steady", "not-computed")
 
 
@@ -116,14 +116,24 @@ def summary(counts: Counts) -> list[str]:
     ]
 
 
-def print_accounts(files: Sequence[FileAccount], stream: TextIO | None = None) -> None:
-    """Write one line for each file: its rows, and what became of them."""
+def print_accounting(report: Report, stream: TextIO | None = None) -> None:
+    """Write what became of every row, what could not be used, and what has not come."""
+    from holdsteady.accounting import accounting  # noqa: PLC0415
+
     stream = stream or sys.stdout
-    width = max((len(account.file) for account in files), default=0)
-    _line(stream, f"{'file':<{width}} " + " ".join(f"{word:>9}" for word in _OUTCOMES))
-    for account in files:
-        numbers = [getattr(account, word.replace(" ", "_")) for word in _OUTCOMES]
-        _line(stream, f"{account.file:<{width}} " + " ".join(f"{number:>9,}" for number in numbers))
+    for line in accounting(report):
+        _line(stream, line)
+
+
+def print_started(started: Started, stream: TextIO | None = None) -> None:
+    """Write what was seen and guessed, where it was written, and what comes next."""
+    from holdsteady.start.tell import told  # noqa: PLC0415
+
+    stream = stream or sys.stdout
+    for line in told(started.draft):
+        _line(stream, line)
+    _line(stream, f"Wrote {started.path}")
+    _line(stream, f"Next: holdsteady build {shlex.quote(str(started.path.parent))}")
 
 
 def _many(count: int, word: str) -> str:

@@ -273,12 +273,14 @@ def _clear_staging(folder: Path) -> None:
 @contextlib.contextmanager
 def _explained(folder: Path) -> Iterator[None]:
     """Turn what the file system refuses into a PublishError with a remedy."""
+    stood = os.path.exists(folder / MANIFEST)  # noqa: PTH110  False too where it may not be looked at
     try:
         yield
     except ManifestError as error:
         raise _refused(folder, f"has a list of published files that cannot be read ({error})") from error
     except OSError as error:
-        what = f"the site could not be written ({error.strerror or error}); the one before still stands"
+        what = f"the site could not be written ({error.strerror or error})"
+        what += "; the one before still stands" if stood else ""
         where = Path(os.fsdecode(error.filename)) if error.filename else folder
         raise PublishError(_problem(where, what, _remedy(error))) from error
 

@@ -4,12 +4,15 @@ from __future__ import annotations
 
 from collections import Counter
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from pathlib import Path
+from zoneinfo import ZoneInfo
 
-from holdsteady.intake.readings import FileAccount, Intake
+from holdsteady.intake.readings import FileAccount, Intake, SetAside
+from holdsteady.monitor.arrivals import Arrivals
 from holdsteady.monitor.finding import Finding
 from holdsteady.problems import Problem
+from holdsteady.project.logbook import LogbookEntry
 
 DONE, FAIL_ON_MET, NOT_COMPUTED = 0, 1, 3
 
@@ -47,6 +50,10 @@ class Report:
     seconds: stage -> seconds, in order.
     index: the page to open; None where nothing was published.
     written: how many files of the site were written; the others were right already.
+    set_aside: every row, cell and file that could not be used.
+    unmatched: logbook lines that match no characteristic, gauge or case.
+    arrivals: members of `each` that are new or have gone, and what is late.
+    zone: the plant's, in which moments are written.
     """
 
     counts: Counts
@@ -56,6 +63,10 @@ class Report:
     seconds: Mapping[str, float]
     index: Path | None
     written: int
+    set_aside: tuple[SetAside, ...] = ()
+    unmatched: tuple[LogbookEntry, ...] = ()
+    arrivals: Arrivals = field(default_factory=Arrivals)
+    zone: ZoneInfo = field(default_factory=lambda: ZoneInfo("UTC"))
 
     def exit_code(self, *, fail_on_signalling: bool = False) -> int:
         """Return 1 where signals are to fail and there are some, 3 where one is not computed, else 0."""

@@ -126,11 +126,14 @@
     box.tabIndex = 0;
     box.setAttribute("role", "group");
     box.setAttribute("aria-roledescription", "chart");
+    const named = figure.getAttribute("aria-labelledby");
+    if (named) box.setAttribute("aria-labelledby", named);
+    else box.setAttribute("aria-label", data.panels.map((panel) => panel.title).join("; "));
     const caption = figure.querySelector("figcaption");
     if (caption) {
       if (!caption.id) caption.id = "about-" + figure.dataset.id;
-      box.setAttribute("aria-labelledby", caption.id);
-    } else box.setAttribute("aria-label", data.panels.map((panel) => panel.title).join("; "));
+      box.setAttribute("aria-describedby", caption.id);
+    }
     box.setAttribute("aria-description", data.words.hint);
     note.hidden = true;
     box.append(host, note);

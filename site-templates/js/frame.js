@@ -250,7 +250,9 @@
     });
     signals.height = top + 4;
     signals.plot_bottom = panels[panels.length - 1].bottom;
-    return Object.assign(out, { signals: signals, panels: panels, x: x, padding: { left: LEFT, right: right, top: 6, bottom: 26 } });
+    const bottom = data.moments ? 26 + ROW : 26; // below the order that stands for the times
+    if (data.moments) out.words.push({ left: 0, y: signals.height + 33, text: data.words.order, anchor: "left", tone: "soft" });
+    return Object.assign(out, { signals: signals, panels: panels, x: x, padding: { left: LEFT, right: right, top: 6, bottom: bottom } });
   }
 
   holdsteady.frame = frame;

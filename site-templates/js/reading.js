@@ -10,7 +10,10 @@
   function number(panel, value) {
     const scaled = value * panel.factor;
     let text;
-    if (panel.decimals !== null) text = scaled.toFixed(panel.decimals);
+    if (panel.decimals !== null) {
+      text = scaled.toFixed(panel.decimals);
+      if (Number(text) === 0 && scaled !== 0) text = Number(scaled.toPrecision(1)).toString();
+    }
     else if (Number.isInteger(scaled) && Math.abs(scaled) < 1e9) text = String(scaled);
     else {
       const size = scaled === 0 ? 0 : Math.floor(Math.log10(Math.abs(scaled)));
@@ -49,7 +52,8 @@
     const words = data.words;
     const name = data.label && data.label[i] ? data.label[i] : words.point + " " + (i + 1);
     const n = Array.isArray(data.n) ? data.n[i] : data.n;
-    const said = [[data.timed ? moment(rows.at(data, i)) : name, "when"]];
+    const when = data.timed ? rows.at(data, i) : data.moments ? data.moments[i] : null;
+    const said = [[when === null ? name : moment(when), "when"]];
     data.panels.forEach((panel, k) => {
       const value = panel.value[i];
       if (value === null) return;
@@ -57,10 +61,12 @@
       said.push([panel.title.split(",")[0] + " " + number(panel, value) + panel.unit + (limits ? " · " + limits : ""), "value"]);
     });
     const size = n === null ? "" : words.n + " = " + number({ factor: 1, decimals: null }, n);
-    said.push([[data.timed ? name : "", size].filter(Boolean).join(" · "), "soft"]);
+    said.push([[when === null ? "" : name, size].filter(Boolean).join(" · "), "soft"]);
     const marks = new Set(data.panels.map((panel) => rows.marksOf(panel).get(i)));
     if (marks.has("fault")) said.push([words.faulty, "soft"]);
-    if (marks.has("hollow")) said.push([words.excluded, "soft"]);
+    const sided = (side) => marks.has(side) || marks.has("ring " + side);
+    ["below", "above"].forEach((side) => { if (sided(side)) said.push([words[side], "soft"]); });
+    if (marks.has("hollow") && !sided("below") && !sided("above")) said.push([words.excluded, "soft"]);
     if (marks.has("open")) said.push([words.open, "soft"]);
     const beyond = (panel, k) => panel.value[i] !== null && (panel.value[i] < frame.panels[k].domain.low || panel.value[i] > frame.panels[k].domain.high);
     if (data.panels.some(beyond)) said.push([words.beyond, "soft"]);

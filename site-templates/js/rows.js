@@ -2,7 +2,9 @@
 (function () {
   "use strict";
   const holdsteady = window.holdsteady || (window.holdsteady = {});
-  const MARKS = ["point", "ring", "hollow", "fault", "open"];
+  const MARKS = ["point", "ring", "hollow", "fault", "open", "below", "above", "ring below", "ring above"];
+  const ROUND = "M-.7,0A.7,.7,0,1,1,.7,0A.7,.7,0,1,1,-.7,0";
+  const BARS = { below: "M-1,0L1,0M0,0L0,1.5", above: "M-1,0L1,0M0,0L0,-1.5" }; // the stem points to where the reading lies
   const ALL_DRAWN = 2000; // points; above, each two pixels keep four
   const DAY = 86400000;
 
@@ -130,12 +132,14 @@
       for (let k = seen + 1; k < i; k += 1) if (source.value[k] === null) { broken += 1; break; }
       seen = i;
       const v = source.value[i];
-      const mark = names.get(i) || "point";
+      const name = names.get(i) || "point";
+      const ring = name.startsWith("ring"), side = name.split(" ").pop();
+      const mark = BARS[side] ? "limit" : name;
       const over = v > domain.high, under = v < domain.low;
       return {
         x: at(data, i), y: over ? domain.high : under ? domain.low : v, piece: piece + "-" + broken,
-        mark: (over || under) && mark !== "fault" ? "beyond" : mark, ring: mark === "ring",
-        shape: over ? "triangle-up" : "triangle-down",
+        mark: (over || under) && mark !== "fault" ? "beyond" : mark, ring: ring,
+        shape: over ? "triangle-up" : under ? "triangle-down" : BARS[side] ? BARS[side] + (ring ? ROUND : "") : "circle",
       };
     });
   }

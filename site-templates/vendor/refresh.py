@@ -36,13 +36,25 @@ def installed(folder: Path) -> Path:
 
 
 def licences(packages: Path) -> str:
-    """Return the licences of the packages that Vega's script is bundled from, each text once."""
+    """Return the licences of the packages that Vega's script is bundled from, each text once.
+
+    A package without one is not published: someone has to look at it first.
+    """
     named: dict[str, list[str]] = {}
-    for package in sorted(packages.iterdir()):
+    for package in _bundled(packages):
         found = sorted(package.glob("LICEN[CS]E*"))
-        if found:
-            named.setdefault(found[0].read_text(encoding="utf-8").strip(), []).append(package.name)
+        if not found:
+            sys.exit(f"{package.name} has no licence text: find out whether its code may be passed on.")
+        named.setdefault(found[0].read_text(encoding="utf-8").strip(), []).append(package.name)
     return "\n".join(f"{', '.join(names)}\n\n{text}\n\n{'-' * 78}\n" for text, names in named.items())
+
+
+def _bundled(packages: Path) -> list[Path]:
+    """Return the folders of packages in order, those of a scope too; descriptions of types hold no code."""
+    folders = [folder for folder in sorted(packages.iterdir()) if folder.is_dir() and folder.name[0] != "."]
+    scoped = [inner for folder in folders if folder.name[0] == "@" for inner in sorted(folder.iterdir())]
+    plain = [folder for folder in folders if folder.name[0] != "@"]
+    return plain + [folder for folder in scoped if folder.parent.name != "@types"]
 
 
 def as_classic(module: str) -> str:

@@ -7,9 +7,11 @@ import shutil
 from pathlib import Path
 from zoneinfo import ZoneInfo
 
+from tests.charts.plain_labels import PlainLabels
+
 from holdsteady.charts.data import page_data
 from holdsteady.charts.kinds import KindsScript
-from holdsteady.charts.labels import Labels, PlainLabels
+from holdsteady.charts.labels import Labels
 from holdsteady.charts.static import static_chart
 from holdsteady.monitor.finding import Finding
 

@@ -143,3 +143,40 @@ def test_the_meetings_sheet_fits_on_one_page(browser: Browser, site: Path, tmp_p
         b"/Type /Page\n"
     ) <= 2  # the agenda, and what is over
     page.close()
+
+
+def test_a_live_chart_is_named_by_its_page_and_described_by_its_caption(page: Page, site: Path) -> None:
+    page.open(site / "characteristic" / "bore-press-2.html")
+    settle(page)
+    names = page.evaluate(
+        """['labelledby', 'describedby'].map((kind) => {
+            const box = document.querySelector('.chart-live');
+            return document.getElementById(box.getAttribute('aria-' + kind)).tagName;
+        })"""
+    )
+    assert names == ["H1", "FIGCAPTION"]
+
+
+def test_a_narrow_table_still_has_its_columns_and_rows_for_those_who_hear_it(
+    browser: Browser, site: Path
+) -> None:
+    page = browser.page(width=390)
+    page.open(site / "characteristic" / "bore-press-2.html")
+    settle(page)
+    nodes = page.call("Accessibility.getFullAXTree")["nodes"]
+    roles = [node["role"]["value"] for node in nodes if not node.get("ignored")]
+    tables = page.evaluate("document.querySelectorAll('table').length")
+    assert roles.count("table") == tables > 1
+    assert roles.count("columnheader") == page.evaluate("document.querySelectorAll('th[scope=col]').length")
+    assert roles.count("rowheader") == page.evaluate("document.querySelectorAll('th[scope=row]').length")
+    page.close()
+
+
+def test_what_paper_alone_says_stands_on_paper_alone(page: Page, site: Path) -> None:
+    shown = "[...document.querySelectorAll('.paper')].map((e) => getComputedStyle(e).display)"
+    page.open(site / "data.html")
+    assert set(page.evaluate(shown)) == {"none"}
+    page.prefer("light", medium="print")
+    assert "none" not in page.evaluate(shown)
+    page.evaluate("document.querySelectorAll('details').forEach((fold) => { fold.open = true; })")
+    assert page.evaluate(f"{shown}.filter((display) => display !== 'none').length") == 1  # the page's name

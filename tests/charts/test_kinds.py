@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import re
 from pathlib import Path
 from typing import Any, get_args
 
@@ -10,6 +11,7 @@ import pytest
 
 from holdsteady.charts import kinds, specs
 from holdsteady.charts.marks import PALETTE
+from holdsteady.places import templates
 
 KINDS = ("individuals", "mean-range", "mean-sd", "median-range", "p", "np", "c", "u")
 
@@ -105,3 +107,11 @@ def test_every_chart_the_settings_know_has_a_kind() -> None:
     from holdsteady.project import settings  # noqa: PLC0415
 
     assert set(get_args(settings.ChartName)) <= set(specs.KINDS)
+
+
+def test_a_chart_elsewhere_has_the_colours_of_the_pages() -> None:
+    css = (templates() / "css" / "site.css").read_text(encoding="utf-8")
+    light = re.search(r":root \{([^}]*)\}", css)
+    assert light is not None
+    page = dict(re.findall(r"--([a-z-]+): (#[0-9a-f]{6});", light[1]))
+    assert {name: page[name] for name in PALETTE} == PALETTE

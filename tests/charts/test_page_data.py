@@ -9,11 +9,12 @@ from zoneinfo import ZoneInfo
 
 import numpy as np
 import pytest
+from tests.charts.plain_labels import PlainLabels
 from tests.charts.varied_findings import HOSTILE, hostile, one_point, two_eras, unequal, varied
 from tests.made_findings import all_findings, finding
 
 from holdsteady.charts.data import page_data
-from holdsteady.charts.labels import READING_WORDS, PlainLabels
+from holdsteady.charts.labels import READING_WORDS
 from holdsteady.monitor.finding import Finding
 
 LISBON = ZoneInfo("Europe/Lisbon")

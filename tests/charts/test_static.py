@@ -10,11 +10,11 @@ import numpy as np
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
+from tests.charts.plain_labels import PlainLabels
 from tests.charts.varied_findings import hostile, long, two_eras, varied
 from tests.made_findings import all_findings
 
 from holdsteady.charts import picture
-from holdsteady.charts.labels import PlainLabels
 from holdsteady.charts.sheet import fitted, text_width, thinned
 from holdsteady.charts.static import static_chart
 from holdsteady.charts.ticks import order_ticks, time_ticks

@@ -54,6 +54,19 @@ def test_licences_name_what_is_bundled() -> None:
         assert name in text
 
 
+def test_a_package_without_a_licence_is_refused(refresh: ModuleType, tmp_path: Path) -> None:
+    for name, text in {"vega": "one", "@scope/inner": "two", "@types/estree": "", ".bin": ""}.items():
+        (tmp_path / name).mkdir(parents=True)
+        if text:
+            (tmp_path / name / "LICENSE").write_text(text)
+    (tmp_path / ".package-lock.json").write_text("{}")
+    assert refresh.licences(tmp_path).startswith("vega\n\none\n")
+    assert "inner\n\ntwo\n" in refresh.licences(tmp_path)
+    (tmp_path / "new").mkdir()
+    with pytest.raises(SystemExit, match="new has no licence text"):
+        refresh.licences(tmp_path)
+
+
 def test_the_wrapping_refuses_a_module_it_does_not_know(refresh: ModuleType) -> None:
     with pytest.raises(SystemExit):
         refresh.as_classic("import { other } from 'elsewhere';\nexport default other;\n")

@@ -100,6 +100,7 @@ def two_eras(*, n: int = 140, chart: str = "mean-range") -> Finding:
         outside_specification=0,
         readings=25,
         good_way=False,
+        gross=False,
     )
     past = replace(
         older, id="c-past", state="ended", first_index=half + 8, last_index=half + 8, fired_index=half + 8
@@ -120,6 +121,7 @@ def two_eras(*, n: int = 140, chart: str = "mean-range") -> Finding:
         era=np.where(np.arange(n) < half, 1, 2),
         segment=np.where(np.arange(n) < half, 0, 1),
         open=np.arange(n) == n - 1,
+        side=np.zeros(n, dtype=np.int8),
     )
     log = (
         die,
@@ -188,7 +190,7 @@ def one_point() -> Finding:
         finding("peak", title="Kiln peak temperature", chart="individuals", n=60, unit="°C")
     )
     assert made.points is not None
-    names = ("time", "label", "n", "file", "line", "era", "segment", "excluded", "faulty", "open")
+    names = ("time", "label", "n", "file", "line", "era", "segment", "excluded", "faulty", "open", "side")
     cut = {name: getattr(made.points, name)[:1] for name in names}
     columns = ("value", "centre", "lower", "upper", "sigma", "z", "in_baseline", "judged")
     panels = [replace(p, **{c: getattr(p, c)[:1] for c in columns}) for p in made.panels]

@@ -323,6 +323,17 @@ class TestTrouble:
         assert tree(tmp_path) == before
         assert not (tmp_path / module.STAGING).exists()
 
+    def test_where_no_site_was_before_none_is_said_to_stand(
+        self, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+    ) -> None:
+        def refuse(path: Path, content: bytes) -> None:  # noqa: ARG001
+            raise OSError(errno.ENOSPC, os.strerror(errno.ENOSPC), str(path))
+
+        monkeypatch.setattr(module, "_write", refuse)
+        with pytest.raises(PublishError, match="could not be written") as caught:
+            publish(site("one"), tmp_path / "new")
+        assert "the one before" not in str(caught.value)
+
     def test_leftovers_of_an_interrupted_publication_go(self, tmp_path: Path) -> None:
         publish(site("one"), tmp_path)
         (tmp_path / module.STAGING / "assets").mkdir(parents=True)

@@ -19,7 +19,9 @@ from holdsteady.site.view import SiteView
 
 HOSTILE = "</script><img src=x onerror=alert(1)>\"' onmouseover='alert(2)"
 _APART = {"dt", "dd", "td", "th", "p", "li", "h1", "h2", "h3", "div", "figcaption", "code"}
-_VOID = {"meta", "link", "br", "img", "input", "hr", "path", "circle", "rect", "line", "use", "polyline"}
+_VOID = {
+    "meta", "link", "br", "col", "img", "input", "hr", "path", "circle", "rect", "line", "use", "polyline",
+}  # fmt: skip
 
 
 def file_account(file: str, *, source: str = "press", set_aside: int = 0) -> FileAccount:

@@ -15,7 +15,9 @@ from holdsteady.project.settings import Specification
 from holdsteady.site.limits_lines import current_limits, limits_table
 from holdsteady.site.moments import Clock
 from holdsteady.site.remarks import legend, remarks, wanted
+from holdsteady.site.words import flag_short
 from holdsteady.site.worklist import Work, why
+from holdsteady.spc.doubt import compare
 
 CLOCK = Clock(zone=ZoneInfo("Europe/Lisbon"), now=AS_OF)
 BORE = finding("bore", title="Bore diameter")
@@ -103,9 +105,57 @@ def test_remarks_name_flags_dispersion_and_what_the_logbook_left_out() -> None:
 
 def test_an_attribute_chart_without_a_lower_limit_cannot_show_an_improvement() -> None:
     said = "There is no lower limit: one point alone cannot show an improvement."
-    assert said in remarks(finding("stops", chart="c", unit=""))  # 4 - 3 * 2 is below zero
+    stops = finding("stops", chart="c", unit="")  # 4 - 3 * 2 is below zero
+    assert said in remarks(stops)
     assert said not in remarks(finding("rejects", chart="p", unit=""))
     assert said not in remarks(BORE)
+    # Without any limits nothing can be shown at all, and that is said elsewhere.
+    assert said not in remarks(finding("stops", chart="c", unit="", state="gathering"))
+    # Where more is better, low is the bad way.
+    passed = remarks(finding("stops", chart="c", unit="", better="higher"))
+    assert said not in passed
+    assert "There is no lower limit: one point alone cannot show that it got worse." in passed
+
+
+def test_a_fraction_without_an_upper_limit_says_what_that_hides() -> None:
+    def of(better: str | None) -> tuple[str, ...]:
+        made = finding("passes", chart="p", unit="", better=better)
+        panel = replace(made.panels[0], upper=np.full(90, np.nan))
+        return remarks(replace(made, panels=(panel,), limits=(replace(made.limits[0], upper=None),)))
+
+    assert "There is no upper limit: one point alone cannot show an improvement." in of("higher")
+    assert "There is no upper limit: one point alone cannot show that it got worse." in of(None)
+
+
+def test_limits_that_vary_are_asked_at_the_newest_complete_point() -> None:
+    made = finding("rejects", chart="p", unit="")
+    lower = made.panels[0].lower.copy()
+    lower[-2] = np.nan
+    made = replace(
+        made,
+        panels=(replace(made.panels[0], lower=lower),),
+        limits=(replace(made.limits[0], lower=None, upper=None, varies=True, at_index=88),),
+    )
+    said = "There is no lower limit: one point alone cannot show an improvement."
+    assert said in remarks(made)
+    assert said not in remarks(replace(made, limits=(replace(made.limits[0], at_index=89),)))
+
+
+def test_doubtful_limits_say_in_what() -> None:
+    rng = np.random.default_rng(3)
+    found = compare(rng.normal(size=25), 3 + 5 * rng.normal(size=200))
+    assert len(found.reasons) == 2
+    made = replace(BORE, flags=("doubtful-limits",), doubts=found.reasons)
+    assert remarks(made)[0] == (
+        "The limits are doubtful: the process has not run as it did in their baseline: "
+        "the level differs from the baseline's and the spread differs from the baseline's."
+    )
+    assert flag_short(made, "doubtful-limits") == "limits doubtful: level and spread"
+    related = compare(rng.normal(size=40), np.cumsum(rng.normal(size=400)))
+    assert any("autocorrelation" in reason for reason in related.reasons)
+    short = flag_short(replace(made, doubts=related.reasons), "doubtful-limits")
+    assert short.endswith("autocorrelation")
+    assert "differs" not in short
 
 
 @pytest.mark.parametrize(
@@ -144,9 +194,13 @@ def test_a_gross_case_inside_its_own_baseline_says_why_it_is_open() -> None:
     panel = made.panels[0]
     z = panel.z.copy()
     z[80] = 6.2
-    case = replace(made.cases[0], first_index=80, fired_index=80, last_index=80)
+    case = replace(made.cases[0], first_index=80, fired_index=80, last_index=80, gross=True)
     inside = replace(panel, z=z, in_baseline=np.ones_like(panel.in_baseline))
     said = why(Work(replace(made, panels=(inside, made.panels[1])), case))
     assert said.endswith("Inside the baseline of its own limits, but gross.")
     outside = replace(panel, z=z)
     assert "baseline" not in why(Work(replace(made, panels=(outside, made.panels[1])), case))
+    # Which points are gross is the monitor's to say.
+    assert "gross" not in why(
+        Work(replace(made, panels=(inside, made.panels[1])), replace(case, gross=False))
+    )

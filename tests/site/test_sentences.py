@@ -6,7 +6,6 @@ from dataclasses import replace
 from typing import Any
 from zoneinfo import ZoneInfo
 
-import numpy as np
 import pytest
 from tests.made_findings import AS_OF, HOUR, all_findings, finding
 
@@ -15,6 +14,7 @@ from holdsteady.project.durations import Duration
 from holdsteady.site.case_lines import logbook_line
 from holdsteady.site.headlines import details, first_details, first_sentence, headline, state_said
 from holdsteady.site.labels import SiteLabels
+from holdsteady.site.limits_lines import current_limits
 from holdsteady.site.moments import Clock
 from holdsteady.site.sentences import case_details, case_label, case_sentence, outside_said, reason_said
 from holdsteady.site.words import rule_said, signal_said
@@ -68,6 +68,7 @@ def with_case(  # one signal, one case, as a test wants them
         "outside_specification": 0,
         "readings": 90,
         "good_way": False,
+        "gross": False,
     }
     found = Case(**(given | case))
     return replace(made, signals=(signal,), cases=(found,), state="signalling"), found
@@ -247,10 +248,16 @@ def test_a_signal_on_the_spread_names_what_it_is_of() -> None:
 
 
 def test_rules_with_their_counts() -> None:
-    assert (
-        rule_said(Rule(name="run-one-side", points=8, of=8))
-        == "eight points in a row on one side of the centre line"
-    )
+    run = Rule(name="run-one-side", points=8, of=8)
+    assert rule_said(run, BORE.panels[0]) == "eight points in a row on one side of the centre line"
+
+
+def test_a_run_of_counts_is_told_from_the_median_that_judges_it() -> None:
+    stops = finding("stops", chart="c", unit="")
+    run = Rule(name="run-one-side", points=9, of=9)
+    assert rule_said(run, stops.panels[0]) == "nine points in a row on one side of the median"
+    made, _ = with_case(stops, direction="low", first=40, fired=48, last=48)
+    assert signal_said(made, made.signals[0]) == "nine points in a row below the median"
 
 
 def test_headlines_by_state() -> None:
@@ -260,15 +267,40 @@ def test_headlines_by_state() -> None:
         said["stops"] == "Press stops has run high since about 04:10 on Monday, by 3.6; a reason is recorded."
     )
     assert said["flow"] == "Flow at 1 bar has sent no reading since 14:10 on Tuesday."
-    assert said["glaze"] == "Glaze specks is gathering points for its limits: 20 of 25 points."
+    assert said["glaze"] == "Glaze specks is gathering points for its limits: 5 points; limits begin at 8."
     assert said["none"].endswith(" cannot be computed: no file matches press/*.csv.")
+    # The row's own points count: of 25 in this era, two were left out or not taken, and so on.
     few = finding("few", title="Torque", state="gathering", n=25)
-    assert few.points is not None
-    few = replace(few, points=replace(few.points, era=np.array([1] * 20 + [2] * 5)))
+    few = replace(few, limits=(replace(few.limits[0], points=1),))
     assert (
-        headline(few, CLOCK).text == "Torque is gathering points for its limits: 5 points; limits begin at 8."
+        headline(few, CLOCK).text == "Torque is gathering points for its limits: 1 point; limits begin at 8."
     )
-    assert state_said(few, CLOCK) == "gathering, 5 points; limits begin at 8"
+    assert state_said(few, CLOCK) == "gathering, 1 point; limits begin at 8"
+
+
+@pytest.mark.parametrize(
+    ("note", "said"),
+    [
+        ("no variation in the baseline", "no variation in its baseline"),
+        ("no events in the baseline", "no events in its baseline"),
+        ("every unit in the baseline counted", "every unit in its baseline counted"),
+    ],
+)
+def test_a_baseline_that_allows_no_limits_is_not_told_as_gathering(note: str, said: str) -> None:
+    made = finding("torque", title="Torque", state="gathering", n=100)
+    row = replace(made.limits[0], points=25, note=note, estimator="mean-range")
+    made = replace(made, limits=(row,))
+    for state in ("gathering", "not-computed"):
+        stuck = replace(made, state=state, reason=note, remedy="Give `limits`.")
+        assert headline(stuck, CLOCK).text == f"Torque has no limits: {said}."
+        assert state_said(stuck, CLOCK) == f"no limits: {said}"
+    assert details(stuck, CLOCK) == ["Without limits it cannot signal.", "Give `limits`."]
+    assert first_sentence([made, finding("s")]).text == (
+        "No signal among 2 characteristics; 1 has a baseline that allows no limits."
+    )
+    assert SiteLabels(clock=CLOCK).limits(row) == f"no limits: {note}"
+    origin = dict(current_limits(made, CLOCK))["Origin"]
+    assert origin == "the baseline's centre; it allows no limits"
 
 
 def test_beneath_a_steady_headline_stands_the_newest_point() -> None:
@@ -365,7 +397,11 @@ def test_areas_that_need_someone_come_first_then_state_then_title() -> None:
 
 def test_the_logbook_line_is_ready_to_paste() -> None:
     made, case = with_case(BORE)
-    assert logbook_line(made, case, CLOCK) == "2026-03-17 14:10,2026-03-16 04:10,,bore,c-1,,cause,,,,"
+    # Half-open and to the minute: what has come so far, and nothing of what comes later.
+    assert (
+        logbook_line(made, case, CLOCK)
+        == "2026-03-17 14:10,2026-03-16 04:10,2026-03-17 14:11,bore,c-1,,cause,,,,"
+    )
     over, case = with_case(BORE, ongoing=False, last=80)
     assert (
         logbook_line(over, case, CLOCK)

@@ -16,8 +16,9 @@ import orjson
 
 from holdsteady.arrays import Floats, Ints
 from holdsteady.charts import picture
+from holdsteady.charts.along import Along, along
 from holdsteady.charts.labels import Labels
-from holdsteady.monitor.finding import Finding, LimitsInForce, Panel, Points
+from holdsteady.monitor.finding import Finding, LimitsInForce, Panel
 from holdsteady.times import wall
 
 _MILLISECOND: Final = 1_000
@@ -44,11 +45,16 @@ def page_data(finding: Finding, zone: ZoneInfo, labels: Labels) -> bytes:
 def _columns(finding: Finding, zone: ZoneInfo, labels: Labels) -> dict[str, Any]:
     points = finding.points
     count = 0 if points is None else len(points.n)
+    axis = None if points is None else along(points, zone)
     return {
         "kind": finding.chart,
-        "timed": points is not None and points.time is not None,
+        "timed": axis is not None and axis.timed,
         "count": count,
-        "x": _along(points, zone),
+        "x": [] if axis is None else _places(axis),
+        # What to read at each point where the axis does not tell.
+        "moments": axis.moments // _MILLISECOND
+        if axis is not None and axis.moments is not None and axis.shared
+        else None,
         "n": None if points is None else _constant_or_column(points.n),
         "label": list(points.label) if points is not None and any(points.label) else None,
         "pieces": [0]
@@ -64,19 +70,17 @@ def _columns(finding: Finding, zone: ZoneInfo, labels: Labels) -> dict[str, Any]
             {"from": e.start_index, "to": e.stop_index, "text": labels.era(finding, e)} for e in finding.eras
         ],
         "baselines": _baselines(finding, labels),
-        "entries": _entries(finding, zone, labels),
+        "entries": [] if axis is None else _entries(finding, zone, labels, axis),
         "cases": _cases(finding, labels),
         "wanted": _wanted(finding, labels),
         "words": dict(labels.reading),
     }
 
 
-def _along(points: Points | None, zone: ZoneInfo) -> Any:
-    if points is None:
-        return []
-    if points.time is None:
+def _places(axis: Along) -> Any:
+    if not axis.timed or axis.moments is None:
         return {"from": 1, "step": 1}
-    moments: Ints = wall(points.time, zone) // _MILLISECOND
+    moments: Ints = axis.moments // _MILLISECOND
     steps = np.diff(moments)
     if steps.size and steps[0] > 0 and np.all(steps == steps[0]):
         return {"from": int(moments[0]), "step": int(steps[0])}
@@ -107,14 +111,9 @@ def _panel(finding: Finding, panel: Panel, labels: Labels) -> dict[str, Any]:
 
 
 def _limits(finding: Finding, panel: Panel, row: LimitsInForce, labels: Labels, index: int) -> dict[str, Any]:
-    last = row.stop_index - 1
     said = {
-        name: None if value is None or not np.isfinite(value) else labels.number(finding, panel, float(value))
-        for name, value in (
-            ("centre", panel.centre[last] if row.varies else row.centre),
-            ("lower", panel.lower[last] if row.varies else row.lower),
-            ("upper", panel.upper[last] if row.varies else row.upper),
-        )
+        name: labels.number(finding, panel, value) if np.isfinite(value) else None
+        for name, value in zip(("lower", "centre", "upper"), picture.quoted(row, panel), strict=True)
     }
     return {
         "panel": index,
@@ -143,19 +142,17 @@ def _baselines(finding: Finding, labels: Labels) -> list[dict[str, Any]]:
     ]
 
 
-def _entries(finding: Finding, zone: ZoneInfo, labels: Labels) -> list[dict[str, Any]]:
-    if finding.points is None or finding.points.time is None:
+def _entries(finding: Finding, zone: ZoneInfo, labels: Labels, axis: Along) -> list[dict[str, Any]]:
+    if axis.moments is None:
         return []
     began = {e.entry.line for e in finding.eras if e.entry is not None}  # told by the era's own label
     lines = sorted((e for e in finding.logbook if e.line not in began), key=lambda e: (e.when, e.line))
-    whens = wall(np.array([e.when for e in lines], dtype=np.int64), zone) // _MILLISECOND
-    untils = (
-        wall(np.array([e.when if e.until is None else e.until for e in lines], dtype=np.int64), zone)
-        // _MILLISECOND
-    )
+    spans = [(e.when, e.when if e.until is None else e.until) for e in lines]
+    moments = wall(np.array(spans, dtype=np.int64).reshape(-1), zone)
+    places: list[Any] = (moments // _MILLISECOND if axis.timed else axis.at(moments)).tolist()
     return [
-        {"from": int(when), "to": int(until), "text": labels.entry(finding, entry)}
-        for entry, when, until in zip(lines, whens, untils, strict=True)
+        {"from": start, "to": stop, "text": labels.entry(finding, entry)}
+        for entry, start, stop in zip(lines, places[::2], places[1::2], strict=True)
     ]
 
 
@@ -165,8 +162,8 @@ def _cases(finding: Finding, labels: Labels) -> list[dict[str, Any]]:
         {
             "from": case.first_index,
             "to": case.last_index + 1,
-            "low": case.start_low_index,
-            "high": case.start_high_index,
+            "low": None if (start := picture.likely_start(case)) is None else start[0],
+            "high": None if start is None else start[1],
             "panel": names.index(case.panel) if case.panel in names else 0,
             "tone": picture.case_tone(case),
             "text": labels.case(finding, case),

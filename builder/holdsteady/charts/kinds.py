@@ -24,7 +24,7 @@ class KindsScript:
     vega_lite: bytes  # JSON: kind -> Vega-Lite specification, for documents of one's own
 
 
-def kinds_script(cache: Path | None) -> KindsScript:
+def kinds_script(cache: Path | None, *, keep: bool = True) -> KindsScript:
     """Return all kinds of chart, compiled, the same bytes each time.
 
     Parameters
@@ -32,13 +32,15 @@ def kinds_script(cache: Path | None) -> KindsScript:
     cache : Path or None
         A folder of the project's own, made when missing. What it holds counts only if version and content
         fit; a cache that cannot be read or written is as if it were not there.
+    keep : bool
+        Whether what had to be compiled is written there.
     """
     key = _key()
     found = None if cache is None else _read(cache / f"{_NAME}-{key}.json")
     if found is not None:
         return found
     made = _compile()
-    if cache is not None:
+    if cache is not None and keep:
         _write(cache, key, made)
     return made
 

@@ -10,6 +10,7 @@ import numpy as np
 
 from holdsteady.arrays import Floats
 from holdsteady.charts import picture
+from holdsteady.charts.along import Along
 from holdsteady.charts.labels import Labels
 from holdsteady.charts.sheet import Sheet, fitted, text_width
 from holdsteady.monitor.finding import Finding, LimitsInForce
@@ -108,7 +109,7 @@ def draw_eras(sheet: Sheet, finding: Finding, labels: Labels, across: Across) ->
 
 
 def draw_entries(
-    sheet: Sheet, finding: Finding, labels: Labels, across: Across, zone: ZoneInfo, top: float
+    sheet: Sheet, finding: Finding, labels: Labels, across: Across, axis: Along, zone: ZoneInfo, top: float
 ) -> float:
     """Draw the baselines' brackets and the logbook's marks with their words; return where the lane ends."""
     lane = _Lane(most=4)
@@ -116,13 +117,13 @@ def draw_entries(
         era = next((e for e in finding.eras if e.start_index <= start < e.stop_index), None)
         text = "" if era is None else labels.baseline(finding, era)
         _draw_noted(sheet, lane, (float(across.x[start]), float(across.x[stop - 1])), text, top, said=False)
-    if finding.points is not None and finding.points.time is not None and finding.logbook:
+    if axis.moments is not None and finding.logbook:
         began = {e.entry.line for e in finding.eras if e.entry is not None}
         entries = sorted((e for e in finding.logbook if e.line not in began), key=lambda e: (e.when, e.line))
         moments = [(e.when, e.when if e.until is None else e.until) for e in entries]
-        clock = wall(np.array(moments, dtype=np.int64).reshape(-1), zone).reshape(-1, 2)
-        for entry, (start, stop) in zip(entries, clock.tolist(), strict=True):
-            x1, x2 = max(across.at(start), LEFT), min(across.at(stop), across.stop)
+        clock = wall(np.array(moments, dtype=np.int64).reshape(-1), zone)
+        for entry, (when, until) in zip(entries, axis.at(clock).reshape(-1, 2).tolist(), strict=True):
+            x1, x2 = max(across.at(when), LEFT), min(across.at(until), across.stop)
             if x2 >= LEFT and x1 <= across.stop:
                 _draw_noted(sheet, lane, (x1, x2), labels.entry(finding, entry), top, said=True)
     return top + lane.height + (3 if lane.rows else 0)

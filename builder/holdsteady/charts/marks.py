@@ -12,14 +12,15 @@ import altair as alt
 
 Layer = alt.Chart | alt.LayerChart | alt.FacetChart
 
+# The light palette of the pages' style sheet, for a chart that is taken into another document.
 PALETTE: Final = {
     "paper": "#fcfbf8",
     "ink": "#1d2733",
-    "soft": "#5d6875",
+    "soft": "#5a6572",
     "faint": "#69737d",
     "hair": "#dfdcd3",
     "band": "#efece3",
-    "open": "#b8480a",
+    "open": "#b0440a",
     "said": "#1f5f95",
     "data": "#33475b",
 }
@@ -41,11 +42,16 @@ _DATES: Final = {
 
 # Expressions on a row's `mark` and `tone`, evaluated in the page.
 _SHAPE: Final = (
-    "datum.mark == 'fault' ? 'M-1,-1L1,1M-1,1L1,-1' : datum.mark == 'beyond' ? datum.shape : 'circle'"
+    "datum.mark == 'fault' ? 'M-1,-1L1,1M-1,1L1,-1' : "
+    "datum.mark == 'beyond' || datum.mark == 'limit' ? datum.shape : 'circle'"
 )
 _SOLID: Final = "datum.mark == 'point' || datum.mark == 'beyond'"
-_FILL: Final = f"{_SOLID} ? (datum.ring ? c_open : c_data) : datum.mark == 'fault' ? null : c_paper"
-_STROKE: Final = f"{_SOLID} ? null : datum.mark == 'ring' ? c_open : datum.mark == 'open' ? c_data : c_faint"
+_LINES: Final = "datum.mark == 'fault' || datum.mark == 'limit'"
+_FILL: Final = f"{_SOLID} ? (datum.ring ? c_open : c_data) : {_LINES} ? null : c_paper"
+_STROKE: Final = (
+    f"{_SOLID} ? null : datum.ring ? c_open : "
+    "datum.mark == 'open' || datum.mark == 'limit' ? c_data : c_faint"
+)
 _LINE_TONE: Final = "datum.tone == 'open' ? c_open : datum.tone == 'said' ? c_said : c_faint"
 _TEXT_TONE: Final = (
     "datum.tone == 'open' ? c_open : datum.tone == 'said' ? c_said : datum.tone == 'ink' ? c_ink : c_soft"
@@ -118,7 +124,7 @@ def plot(panel: str, *, timed: bool) -> Layer:
     """Return one panel: likely start, limit band, edges, centre line, connecting line, points.
 
     Data sets: `<panel>_starts` (x, x2) · `<panel>_bands` (x, lower, upper, band) · `<panel>_edges`
-    (x, y, edge, dotted) · `<panel>_centres` (x, y, line) · `<panel>_points` (x, y, mark, piece).
+    (x, y, edge, dotted) · `<panel>_centres` (x, y, line) · `<panel>_points` (x, y, mark, ring, shape, piece).
     """
     x = along(timed=timed)
     starts = (
@@ -191,11 +197,12 @@ def _drawn_points(panel: str, x: alt.X) -> tuple[alt.Chart, alt.Chart]:
         opacity=1,
         shape=expression(_SHAPE),
         size=expression(
-            "datum.mark == 'point' ? dot : datum.mark == 'hollow' || datum.mark == 'fault' ? 28 : 36"
+            "datum.mark == 'point' ? dot : datum.mark == 'hollow' || datum.mark == 'fault' ? 28 : "
+            "datum.mark == 'limit' ? 56 : 36"
         ),
         fill=expression(_FILL),
         stroke=expression(_STROKE),
-        strokeWidth=expression("datum.mark == 'ring' ? 1.7 : 1.3"),
+        strokeWidth=expression("datum.mark == 'ring' || datum.mark == 'limit' ? 1.7 : 1.3"),
         strokeDash=expression("datum.mark == 'open' ? [1.5, 1.5] : []"),
     )
     y = _up(panel, "y")

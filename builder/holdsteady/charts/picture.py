@@ -20,6 +20,10 @@ RING: Final = 1  # part of an open case
 HOLLOW: Final = 2  # left out of the limits
 FAULT: Final = 3  # a measurement fault
 INCOMPLETE: Final = 4
+BELOW: Final = 5  # drawn at a limit that the reading lies below
+ABOVE: Final = 6
+RING_BELOW: Final = 7
+RING_ABOVE: Final = 8
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -35,6 +39,17 @@ def case_tone(case: Case) -> Tone:
     return "open" if case.state == "open" else "said" if case.state == "answered" else "past"
 
 
+def likely_start(case: Case) -> tuple[int, int] | None:
+    """Return the first and the last point at which a case may have begun, None where none is likely.
+
+    A step that lies after the point at which the rule was met cannot be what met it.
+    """
+    low, high = case.start_low_index, case.start_high_index
+    if low is None or high is None or (case.start_index is not None and case.start_index > case.fired_index):
+        return None
+    return low, high
+
+
 def in_open_case(finding: Finding, panel: Panel) -> Bools:
     """Return which points of a panel are part of an open case, (N,)."""
     part = np.zeros(len(panel.value), dtype=np.bool_)
@@ -46,13 +61,24 @@ def in_open_case(finding: Finding, panel: Panel) -> Bools:
 
 
 def marks(finding: Finding, panel: Panel) -> Ints:
-    """Return how each point is drawn, (N,): a fault before all else, a ring before a hollow point."""
+    """Return how each point is drawn, (N,): a fault before all else, a ring before a hollow point.
+
+    What is made of a reading known only by a limit shows its side on location alone; a spread is hollow.
+    """
     points = finding.points
     result = np.zeros(len(panel.value), dtype=np.int64)
     if points is None:
         return result
     result[points.excluded] = HOLLOW
-    result[in_open_case(finding, panel)] = RING
+    ringed = in_open_case(finding, panel)
+    result[ringed] = RING
+    if panel.name == "spread":
+        result[points.side != 0] = HOLLOW
+    else:
+        result[points.side < 0] = BELOW
+        result[points.side > 0] = ABOVE
+        result[ringed & (points.side < 0)] = RING_BELOW
+        result[ringed & (points.side > 0)] = RING_ABOVE
     result[points.open] = INCOMPLETE
     result[points.faulty] = FAULT
     return result
@@ -74,7 +100,21 @@ def baseline_spans(panel: Panel) -> list[tuple[int, int]]:
 
 def has_limits(row: LimitsInForce) -> bool:
     """Return whether a row draws more than a centre line."""
-    return row.varies or row.lower is not None or row.upper is not None
+    return row.limited and (row.varies or row.lower is not None or row.upper is not None)
+
+
+def quoted(row: LimitsInForce, panel: Panel) -> tuple[float, float, float]:
+    """Return lower limit, centre and upper limit to quote for a row, NaN for none.
+
+    Where they vary with the size of each point, those of its newest complete one.
+    """
+    if row.varies and row.at_index is not None:
+        at = row.at_index
+        return float(panel.lower[at]), float(panel.centre[at]), float(panel.upper[at])
+    lower, centre, upper = (
+        float("nan") if line is None else line for line in (row.lower, row.centre, row.upper)
+    )
+    return lower, centre, upper
 
 
 def limits_of(finding: Finding, panel: Panel) -> list[LimitsInForce]:

@@ -14,12 +14,12 @@ import numpy as np
 
 from holdsteady.arrays import Floats, Ints
 from holdsteady.charts import lanes, picture
+from holdsteady.charts.along import Along, along
 from holdsteady.charts.labels import Labels
 from holdsteady.charts.sheet import Sheet, fitted, text_width, thinned
 from holdsteady.charts.ticks import order_ticks, time_ticks
-from holdsteady.monitor.finding import Finding, LimitsInForce, Panel, Points
+from holdsteady.monitor.finding import Finding, LimitsInForce, Panel
 from holdsteady.project.settings import Specification
-from holdsteady.times import wall
 
 _WIDTH: Final = 860.0
 _TALL: Final = {"location": 200.0, "single": 230.0}
@@ -56,10 +56,11 @@ def static_chart(finding: Finding, zone: ZoneInfo, labels: Labels) -> str:
     )
     numbers = max((text_width(text) for text in _numbers(finding, labels)), default=0.0)
     right = 14 + numbers + (30 + max(map(text_width, lines)) if lines else 0.0)
-    across = _across(points, zone, _WIDTH - lanes.LEFT - right)
+    axis = along(points, zone)
+    across = _across(axis.place, _WIDTH - lanes.LEFT - right)
     sheet = Sheet(width=_WIDTH)
     top = lanes.draw_eras(sheet, finding, labels, across)
-    top = lanes.draw_entries(sheet, finding, labels, across, zone, top)
+    top = lanes.draw_entries(sheet, finding, labels, across, axis, zone, top)
     for index, panel in enumerate(finding.panels):
         sheet.words("title", 0, top + 10, labels.panel(finding, panel))
         top += 24
@@ -74,14 +75,14 @@ def static_chart(finding: Finding, zone: ZoneInfo, labels: Labels) -> str:
         top += tall + 6
         if index == 0:
             top = lanes.draw_cases(sheet, finding, labels, across, top)
-    _draw_ticks(sheet, points, zone, across, top)
+    _draw_ticks(sheet, axis, across, top)
+    if axis.shared:
+        sheet.words("when", lanes.LEFT, top + 33, labels.reading["order"])
+        top += 18
     return sheet.svg(top + 26)
 
 
-def _across(points: Points, zone: ZoneInfo, width: float) -> lanes.Across:
-    place = np.arange(1, len(points.n) + 1, dtype=np.float64)
-    if points.time is not None:
-        place = wall(points.time, zone).astype(np.float64)
+def _across(place: Floats, width: float) -> lanes.Across:
     span = float(place[-1] - place[0])
     usable = width - 12
     scale = usable / span if span > 0 else 0.0
@@ -147,13 +148,9 @@ def _draw_panel(
     for row in rows:
         _draw_limits(sheet, panel, row, across, heights)
     for case in finding.cases:
-        if (
-            case.state == "open"
-            and case.panel == panel.name
-            and case.start_low_index is not None
-            and case.start_high_index is not None
-        ):
-            x1, x2 = across.around(case.start_low_index, case.start_high_index)
+        start = picture.likely_start(case)
+        if case.state == "open" and case.panel == panel.name and start is not None:
+            x1, x2 = across.around(*start)
             sheet.rectangle("start", x1, heights.top, x2, heights.bottom)
     marks = picture.marks(finding, panel)
     shown = thinned(across.x, panel.value, marks != picture.POINT)
@@ -163,7 +160,9 @@ def _draw_panel(
         sheet.dots("dots", x[kind == picture.POINT], y[kind == picture.POINT])
     sheet.circles("hollow", x[kind == picture.HOLLOW], y[kind == picture.HOLLOW], 3)
     sheet.circles("incomplete", x[kind == picture.INCOMPLETE], y[kind == picture.INCOMPLETE], 3.2)
-    sheet.circles("ring", x[kind == picture.RING], y[kind == picture.RING], 3.2)
+    ringed = np.isin(kind, (picture.RING, picture.RING_BELOW, picture.RING_ABOVE))
+    sheet.circles("ring", x[ringed], y[ringed], 3.2)
+    _draw_bars(sheet, x, y, kind)
     for a, b in zip(x[kind == picture.FAULT].tolist(), y[kind == picture.FAULT].tolist(), strict=True):
         sheet.path(
             "fault",
@@ -172,6 +171,19 @@ def _draw_panel(
                 (np.array([a - 3, a + 3]), np.array([b + 3, b - 3])),
             ],
         )
+
+
+def _draw_bars(sheet: Sheet, x: Floats, y: Floats, kind: Ints) -> None:
+    """Draw a bar at each limit that stands for a reading, its stem pointing to where the reading lies."""
+    for name, below, above in (
+        ("bar", picture.BELOW, picture.ABOVE),
+        ("bar open", picture.RING_BELOW, picture.RING_ABOVE),
+    ):
+        way = np.where(kind == below, 1.0, -1.0)
+        chosen = np.flatnonzero((kind == below) | (kind == above)).tolist()
+        bars = [(x[i] + np.array([-4.0, 4.0]), np.array([y[i], y[i]])) for i in chosen]
+        stems = [(np.array([x[i], x[i]]), np.array([y[i], y[i] + 6 * way[i]])) for i in chosen]
+        sheet.path(name, bars + stems)
 
 
 def _draw_line(
@@ -222,15 +234,7 @@ def _draw_margin(
     sheet: Sheet, finding: Finding, panel: Panel, labels: Labels, heights: _Heights, left: float
 ) -> None:
     rows = picture.limits_of(finding, panel)
-    values = (
-        []
-        if not rows
-        else [
-            panel.upper[rows[-1].stop_index - 1],
-            panel.centre[rows[-1].stop_index - 1],
-            panel.lower[rows[-1].stop_index - 1],
-        ]
-    )
+    values = list(picture.quoted(rows[-1], panel)) if rows else []
     if not rows or not picture.has_limits(rows[-1]):
         values += [] if np.all(np.isnan(panel.value)) else [np.nanmax(panel.value), np.nanmin(panel.value)]
     said = {labels.number(finding, panel, float(v)): float(v) for v in values if not np.isnan(v)}
@@ -258,13 +262,12 @@ def _draw_bracket(
         sheet.words("wanted", left + 13, middle + number * 15, text)
 
 
-def _draw_ticks(sheet: Sheet, points: Points, zone: ZoneInfo, across: lanes.Across, top: float) -> None:
+def _draw_ticks(sheet: Sheet, axis: Along, across: lanes.Across, top: float) -> None:
     most = 7
-    if points.time is None:
-        ticks = order_ticks(len(points.n), most)
+    if axis.moments is None or not axis.timed:
+        ticks = order_ticks(len(axis.place), most)
     else:
-        moments: Ints = wall(points.time, zone)
-        ticks = time_ticks(int(moments[0]), int(moments[-1]), most)
+        ticks = time_ticks(int(axis.moments[0]), int(axis.moments[-1]), most)
     for place, text in ticks:
         x = across.at(place)
         half = text_width(text) / 2

@@ -11,11 +11,18 @@ from holdsteady.arrays import Bools, Floats
 
 POINTS: Final = 60
 _REACH: Final = 4.5  # sigmas at which a needle is cut short
-_LIMIT: Final = 3.0  # sigmas at the dotted lines
 _MARGIN: Final = 2.5  # pixels that keep the ring of a longest needle inside
 
 
-def strip(z: Floats, in_open_case: Bools, *, title: str, width: int = 210, height: int = 24) -> str:
+def strip(
+    z: Floats,
+    in_open_case: Bools,
+    *,
+    limits: tuple[float, float],
+    title: str,
+    width: int = 210,
+    height: int = 24,
+) -> str:
     """Return the strip as inline SVG, themed by classes alone.
 
     Parameters
@@ -25,6 +32,8 @@ def strip(z: Floats, in_open_case: Bools, *, title: str, width: int = 210, heigh
         Of more than 60 points the last 60 are drawn, of fewer the rest stays empty on the right.
     in_open_case : (N,) array
         Which points are part of an open case: drawn thick, the farthest of them ringed.
+    limits : (lower, upper)
+        Where the dotted lines stand, in sigmas from the centre; NaN for none.
     title : str
         What a reader who cannot see it is told; escaped here.
     width, height : int
@@ -37,9 +46,10 @@ def strip(z: Floats, in_open_case: Bools, *, title: str, width: int = 210, heigh
     x: Floats = (np.arange(shown.size, dtype=np.float64) + 0.5) * (width / POINTS)
     tip = np.asarray(middle - np.clip(shown, -_REACH, _REACH) * unit, dtype=np.float64)
     real = ~np.isnan(shown)
-    upper, lower = middle - _LIMIT * unit, middle + _LIMIT * unit
+    lines = (middle - min(max(limit, -_REACH), _REACH) * unit for limit in limits if not np.isnan(limit))
+    dotted = "".join(f"M0 {line:.1f}H{width}" for line in lines)
     parts = (
-        f'<path class="limit" d="M0 {upper:.1f}H{width}M0 {lower:.1f}H{width}"/>',
+        f'<path class="limit" d="{dotted}"/>' if dotted else "",
         f'<path class="centre" d="M0 {middle:.1f}H{width}"/>',
         f'<path class="needles" d="{_needles(x, tip, middle, real & ~open_part)}"/>',
         f'<path class="needles open" d="{_needles(x, tip, middle, real & open_part)}"/>',

@@ -1,4 +1,7 @@
-"""What pages share, named by content: one name never stands for two things, so no copy is ever torn."""
+"""What pages share, named by content: one name never stands for two things, so no copy is ever torn.
+
+Only the charts' sources, which no page runs on, keep one name.
+"""
 
 from __future__ import annotations
 
@@ -11,6 +14,7 @@ import xxhash
 from holdsteady.charts.kinds import kinds_script
 from holdsteady.places import templates
 
+CHART_SOURCES = "assets/kinds.vl.json"
 _LONGEST = 40
 _OUTSIDE_NAMES = re.compile(r"[^a-z0-9]+")
 _VENDOR_SCRIPTS = ("vega.min.js", "vega-interpreter.js")
@@ -26,6 +30,7 @@ class Assets:
     first_scripts: tuple[str, ...]
     chart_scripts: tuple[str, ...]  # in the order in which they are to run
     chart_sources: str  # Vega-Lite, for documents of one's own
+    licence: str  # of the scripts that charts run on
 
 
 def content_named(folder: str, stem: str, suffix: str, content: bytes) -> str:
@@ -34,31 +39,39 @@ def content_named(folder: str, stem: str, suffix: str, content: bytes) -> str:
     return f"{folder}/{stem}-{xxhash.xxh3_64_hexdigest(content)}{suffix}"
 
 
-def shared_assets(cache: Path | None) -> Assets:
-    """Gather styles, scripts, chart kinds and the licences of what others wrote."""
+def shared_assets(cache: Path | None, *, keep: bool = True) -> Assets:
+    """Gather styles, scripts, chart kinds and the licences of what others wrote.
+
+    `keep` says whether what had to be compiled may be kept in the cache.
+    """
     folder = templates()
     files: dict[str, bytes] = {}
 
-    def keep(stem: str, suffix: str, content: bytes) -> str:
+    def named(stem: str, suffix: str, content: bytes) -> str:
         path = content_named("assets", stem, suffix, content)
         files[path] = content
         return path
 
-    style = keep(
+    style = named(
         "site", ".css", b"".join(sheet.read_bytes() for sheet in sorted((folder / "css").glob("*.css")))
     )
     vendor = tuple(
-        keep(name.removesuffix(".js"), ".js", (folder / "vendor" / name).read_bytes())
+        named(name.removesuffix(".js"), ".js", (folder / "vendor" / name).read_bytes())
         for name in _VENDOR_SCRIPTS
     )
-    kinds = kinds_script(cache)
-    app = keep("app", ".js", b"".join((folder / "js" / name).read_bytes() for name in _APPLICATION))
+    kinds = kinds_script(cache, keep=keep)
+    app = named("app", ".js", b"".join((folder / "js" / name).read_bytes() for name in _APPLICATION))
     # The kinds call a function of the application, so they run after it.
-    chart_scripts = (*vendor, app, keep("kinds", ".js", kinds.script))
-    sources = keep("kinds-vl", ".json", kinds.vega_lite)
-    first = keep("first", ".js", (folder / "js" / "first.js").read_bytes())
-    for licence in sorted((folder / "vendor").glob("LICENSE*.txt")):
-        keep(licence.stem, ".txt", licence.read_bytes())
+    chart_scripts = (*vendor, app, named("kinds", ".js", kinds.script))
+    # People name this one in documents of their own, so its name stays; no page runs on it.
+    files[CHART_SOURCES] = kinds.vega_lite
+    first = named("first", ".js", (folder / "js" / "first.js").read_bytes())
+    licence = named("license-vega", ".txt", (folder / "vendor" / "LICENSE-vega.txt").read_bytes())
     return Assets(
-        files=files, style=style, first_scripts=(first,), chart_scripts=chart_scripts, chart_sources=sources
+        files=files,
+        style=style,
+        first_scripts=(first,),
+        chart_scripts=chart_scripts,
+        chart_sources=CHART_SOURCES,
+        licence=licence,
     )

@@ -11,7 +11,7 @@ from markupsafe import Markup
 from holdsteady.monitor.finding import Case, Finding
 from holdsteady.site.headlines import answer_said
 from holdsteady.site.moments import Clock
-from holdsteady.site.numbers import opened, plain
+from holdsteady.site.numbers import opened, plain, spelled
 from holdsteady.site.pictures import strip_picture
 from holdsteady.site.sentences import Sentence, case_details, case_sentence, point_short, quoted, shifted
 from holdsteady.site.words import CASE_STATES, panel_named, scale, signal_said
@@ -26,12 +26,14 @@ class OpenLine:
     href: str
     strip: Markup
     sentence: Sentence
-    details: tuple[str, ...]
+    details: tuple[str, ...]  # without how many readings are outside specification, which `why` tells
     why: str
     who: tuple[str, ...]  # area and owner, once where they are one
     answer: str
     reaction: str
     logbook_line: str
+    more: str  # "six more open cases", "" without any
+    further: tuple[tuple[str, str], ...] = ()  # of these the first few: case, what it says
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -52,16 +54,23 @@ class CaseRow:
     answer: str
 
 
-def open_line(work: Work, clock: Clock, *, root: str) -> OpenLine:
-    """Return an open case for the worklist; `root` leads from the page to the site's folder."""
+def open_line(work: Work, clock: Clock, *, root: str, further: int = 0) -> OpenLine:
+    """Return an open case for the worklist; `root` leads from the page to the site's folder.
+
+    `further` says how many of the characteristic's further open cases are told, each in a sentence.
+    """
     finding, case = work.finding, work.case
+    count = len(work.further)
     return OpenLine(
         case=case.id, href=f"{root}characteristic/{finding.slug}.html",
         strip=strip_picture(finding, case, width=230, height=34),
-        sentence=case_sentence(finding, case, clock), details=tuple(case_details(finding, case, clock)),
+        sentence=case_sentence(finding, case, clock),
+        details=tuple(case_details(finding, case, clock, specification=False)),
         why=why(work),
         who=_who(finding), answer=answer_said(case),
         reaction=finding.settings.reaction, logbook_line=logbook_line(finding, case, clock),
+        more=f"{spelled(count)} more open {'case' if count == 1 else 'cases'}" if count else "",
+        further=tuple((c.id, _said_here(case_sentence(finding, c, clock))) for c in work.further[:further]),
     )  # fmt: skip
 
 
@@ -72,7 +81,7 @@ def case_row(finding: Finding, case: Case, clock: Clock, *, root: str) -> CaseRo
     return CaseRow(
         case=case.id, title=finding.title, href=f"{root}characteristic/{finding.slug}.html", state=case.state,
         state_said=CASE_STATES[case.state], said=sentence.text,
-        said_here=opened((sentence.before + sentence.marked + sentence.after).strip()),
+        said_here=_said_here(sentence),
         signals=tuple(signal_said(finding, s) for s in sorted(signals, key=lambda s: (s.fired_index, s.id))),
         first=point_short(finding.points, case.first_index, clock),
         last="ongoing" if case.ongoing else point_short(finding.points, case.last_index, clock),
@@ -81,14 +90,20 @@ def case_row(finding: Finding, case: Case, clock: Clock, *, root: str) -> CaseRo
     )  # fmt: skip
 
 
+def _said_here(sentence: Sentence) -> str:
+    """Return a sentence without its subject, which stands above it."""
+    return opened((sentence.before + sentence.marked + sentence.after).strip())
+
+
 def logbook_line(finding: Finding, case: Case, clock: Clock) -> str:
     """Return the line that answers a case, as `logbook.csv` takes it, its text left to write.
 
-    It names the case and its span, so that `exclude` put to yes takes exactly these points.
+    It names the case and its span so far, whole minutes from the first point's to the one after the last
+    point's, so that `exclude` put to yes takes these points and leaves what comes later in.
     """
     times = finding.points.time if finding.points is not None else None
     when = clock.now if times is None else int(times[case.first_index])
-    until = "" if times is None or case.ongoing else clock.written(int(times[case.last_index]), up=True)
+    until = "" if times is None else clock.written(int(times[case.last_index]), up=True)
     line = io.StringIO()
     csv.writer(line, lineterminator="").writerow(
         [

@@ -7,19 +7,21 @@ from dataclasses import dataclass
 from markupsafe import Markup
 
 from holdsteady.monitor.finding import Finding
+from holdsteady.site import decimals
 from holdsteady.site.case_lines import CaseRow, OpenLine, case_row, open_line
 from holdsteady.site.data_page import LogbookRow, logbook_row
-from holdsteady.site.headlines import details, headline, leading_case
-from holdsteady.site.limits_lines import LimitsRow, current_limits, limits_table
+from holdsteady.site.headlines import details, headline
+from holdsteady.site.limits_lines import LimitsRow, current_limits, estimate_lead, limits_table
 from holdsteady.site.moments import Clock
 from holdsteady.site.numbers import Scale, opened
-from holdsteady.site.point_rows import PointRow, flagged_rows
+from holdsteady.site.point_rows import PointRow, flagged_rows, headings
 from holdsteady.site.remarks import legend, remarks, rules_said, wanted
 from holdsteady.site.sentences import Sentence
-from holdsteady.site.words import CHARTS, CLASS_CAUTION, CLASSES, method_said, statistic_name
-from holdsteady.site.worklist import Work, cautious
+from holdsteady.site.words import CHARTS, CLASS_CAUTION, CLASSES, method_said
+from holdsteady.site.worklist import Work, by_urgency, cautious
 
 _MOST_CASES = 100  # rows; tables/cases.csv has all
+_MOST_LINES = 30  # for the logbook, of the most urgent
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -43,8 +45,9 @@ class Neighbour:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Figures:
-    """How the limits of the latest era were calculated."""
+    """How limits are calculated from the latest era's baseline."""
 
+    lead: str  # "" where these are the limits in force
     method: str
     figures: tuple[tuple[str, str], ...]
     source: str
@@ -63,6 +66,7 @@ class CharacteristicPage:
     chart: Chart | None
     legend: str
     open_lines: tuple[OpenLine, ...]
+    open_more: int
     reaction: str
     owner: str
     cases: tuple[CaseRow, ...]
@@ -75,7 +79,7 @@ class CharacteristicPage:
     wanted: tuple[tuple[str, str], ...]
     remarks: tuple[str, ...]
     logbook: tuple[LogbookRow, ...]
-    panels: tuple[str, ...]
+    panels: tuple[tuple[str, str], ...]  # how its column of values is headed, and that of their limits
     labelled: bool
     points: tuple[PointRow, ...]
     points_more: int
@@ -92,17 +96,18 @@ def characteristic_page(
     """Gather a characteristic's page."""
     settings = finding.settings
     cases = sorted(finding.cases, key=lambda c: (-c.last_index, c.id))
-    urgent = sorted((c for c in cases if c.state == "open"), key=lambda c: c is not leading_case(finding))
+    urgent = by_urgency(finding)
     points, more = flagged_rows(finding, clock)
-    statistic = "fraction" if finding.chart == "p" else "value"
-    unit = Scale(statistic=statistic, unit=settings.unit, decimals=settings.decimals)
+    statistic = "fraction" if finding.chart in {"p", "np"} else "value"
+    unit = Scale(statistic=statistic, unit=settings.unit, decimals=decimals.of_reading(finding))
     return CharacteristicPage(
         title=finding.title, state=finding.state, kicker=_kicker(finding),
         sentence=headline(finding, clock),
         details=tuple(details(finding, clock)),
         caution=_caution(finding),
         chart=chart, legend=legend(finding) if finding.panels else "",
-        open_lines=tuple(open_line(Work(finding, c), clock, root="../") for c in urgent),
+        open_lines=tuple(open_line(Work(finding, c), clock, root="../") for c in urgent[:_MOST_LINES]),
+        open_more=max(len(urgent) - _MOST_LINES, 0),
         reaction=settings.reaction, owner=settings.owner,
         cases=tuple(case_row(finding, c, clock, root="../") for c in cases[:_MOST_CASES]),
         cases_more=max(len(cases) - _MOST_CASES, 0),
@@ -110,6 +115,7 @@ def characteristic_page(
         rules=rules_said(finding), refused_rules=tuple(_refused(finding)),
         calculation=tuple(
             Figures(
+                lead="" if c.in_force else estimate_lead(finding, c),
                 method=opened(method_said(c.method)), source=c.source,
                 figures=tuple((name, unit.figure(value, unit=bearing)) for name, value, bearing in c.figures),
             )
@@ -117,7 +123,7 @@ def characteristic_page(
         ),
         wanted=wanted(finding, clock), remarks=remarks(finding),
         logbook=tuple(logbook_row(e, clock) for e in finding.logbook),
-        panels=tuple(statistic_name(p, finding.common_n) for p in finding.panels),
+        panels=headings(finding),
         labelled=any(row.label for row in points), points=points,
         points_more=more,
         points_href=f"../tables/points/{finding.slug}.csv" if finding.points is not None else "",

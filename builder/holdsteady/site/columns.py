@@ -11,7 +11,7 @@ import pyarrow as pa
 import pyarrow.compute as pc
 
 from holdsteady.arrays import Bools, Floats, Ints
-from holdsteady.times import SECOND, offsets
+from holdsteady.times import iso_parts
 
 _NEEDS_QUOTES = '[",\r\n]'
 # A program that opens the table must not take a cell for a formula.
@@ -75,12 +75,9 @@ def empty(rows: int) -> pa.Array:
 
 def moments(microseconds: Ints, zone: ZoneInfo) -> pa.Array:
     """Return ISO 8601 texts with offset, the same as `times.iso` gives."""
-    shift = offsets(microseconds, zone)
-    unit = "us" if np.any(microseconds % SECOND) else "s"
-    local = pa.array((microseconds + shift).astype("datetime64[us]").astype(f"datetime64[{unit}]"))
-    distinct, codes = np.unique(shift, return_inverse=True)
-    written = pc.replace_substring(local.cast(pa.string()), " ", "T")
-    return pc.binary_join_element_wise(written, coded(codes.reshape(-1), [_offset(s) for s in distinct]), "")
+    local, suffixes, suffix_of = iso_parts(microseconds, zone)
+    written = pc.replace_substring(pa.array(local).cast(pa.string()), " ", "T")
+    return pc.binary_join_element_wise(written, coded(suffix_of, suffixes), "")
 
 
 def optional_moments(microseconds: Sequence[int | None], zone: ZoneInfo) -> pa.Array:
@@ -109,8 +106,3 @@ def csv(header: str, columns: Sequence[pa.Array] = ()) -> bytes:
 def _storable(value: str) -> str:
     # File names that are no UTF-8 come as lone surrogates; NUL would end the text in other programs.
     return value.encode("utf-8", "backslashreplace").decode("utf-8").replace("\0", "\\x00")
-
-
-def _offset(microseconds: int) -> str:
-    minutes = abs(int(microseconds)) // (60 * SECOND)
-    return f"{'-' if microseconds < 0 else '+'}{minutes // 60:02d}:{minutes % 60:02d}"

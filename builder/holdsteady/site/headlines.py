@@ -3,13 +3,14 @@
 from __future__ import annotations
 
 from collections import Counter
-from collections.abc import Mapping, Sequence
+from collections.abc import Sequence
 
-from holdsteady.monitor.finding import Case, Finding, State
+from holdsteady.monitor.finding import Case, Finding
 from holdsteady.site.moments import Clock, duration
 from holdsteady.site.numbers import grouped, known, listed, opened, spelled
 from holdsteady.site.sentences import (
     Sentence,
+    beyond,
     case_details,
     case_sentence,
     gathered,
@@ -18,8 +19,10 @@ from holdsteady.site.sentences import (
     point_short,
     quoted,
     reason_said,
+    why_no_limits,
 )  # fmt: skip
 from holdsteady.site.words import scale, statistic_said
+from holdsteady.site.worklist import by_urgency
 
 
 def first_sentence(findings: Sequence[Finding]) -> Sentence:
@@ -34,11 +37,11 @@ def first_sentence(findings: Sequence[Finding]) -> Sentence:
             marked=f"{opened(spelled(wanting))} of {_count(total)} characteristics",
             after=f" {_verb(wanting, 'needs', 'need')} someone now.",
         )
-    without = _without(Counter(f.state for f in findings))
+    without = _without(findings)
     after = f"; {listed(without)}." if without else "."
     if _quiet(findings):
         among = " in the one characteristic" if total == 1 else f" among {_count(total)} characteristics"
-        return Sentence(subject="No signal", before=among, after=after)
+        return Sentence(subject=f"No {_open_signal(findings)}", before=among, after=after)
     none = (
         "The one characteristic needs no one"
         if total == 1
@@ -53,7 +56,8 @@ def first_details(findings: Sequence[Finding]) -> list[str]:
     wanting = _wanting(findings)
     parts = []
     if counts["steady"] and not (wanting == 0 and _quiet(findings)):
-        parts.append(f"{_count(counts['steady'])} {_verb(counts['steady'], 'shows', 'show')} no signal")
+        none = _open_signal([f for f in findings if f.state == "steady"])
+        parts.append(f"{_count(counts['steady'])} {_verb(counts['steady'], 'shows', 'show')} no {none}")
     if good := sum(f.state == "signalling" and all(c.good_way for c in open_cases(f)) for f in findings):
         parts.append(f"{_count(good)} moved the good way")
     if counts["answered"]:
@@ -61,7 +65,7 @@ def first_details(findings: Sequence[Finding]) -> list[str]:
             f"{_count(counts['answered'])} {_verb(counts['answered'], 'has', 'have')} a recorded reason"
         )
     if wanting:
-        parts += _without(counts)
+        parts += _without(findings)
     return [f"{opened(listed(parts))}."] if parts else []
 
 
@@ -81,18 +85,24 @@ def headline(finding: Finding, clock: Clock) -> Sentence:
         return Sentence(
             subject=title, before=" has ", marked=f"sent no reading since {clock.said(finding.silent_since)}"
         )
-    if finding.state == "gathering":
-        return Sentence(subject=title, before=f" is gathering points for its limits: {gathered(finding)}")
+    why = why_no_limits(finding)
+    if finding.state == "gathering" or (finding.state == "not-computed" and why):
+        waiting = f" is gathering points for its limits: {gathered(finding)}"
+        return Sentence(subject=title, before=f" has no limits: {why}" if why else waiting)
     if finding.state == "not-computed":
         return Sentence(subject=title, before=" ", marked="cannot be computed", after=f": {finding.reason}.")
-    return Sentence(subject=title, before=" shows no signal")
+    ended = _ended(finding)
+    return Sentence(
+        subject=title, before=f" shows no {_open_signal([finding])}", after=f"; {ended}." if ended else "."
+    )
 
 
 def details(finding: Finding, clock: Clock) -> list[str]:
     """Return the sentences beneath the headline."""
     worst = leading_case(finding)
     if finding.state == "not-computed":
-        return [_sentence(finding.remedy)] if finding.remedy else []
+        remedy = [_sentence(finding.remedy)] if finding.remedy else []
+        return ["Without limits it cannot signal.", *remedy] if why_no_limits(finding) else remedy
     if finding.state in {"signalling", "answered"} and worst is not None:
         said = [*case_details(finding, worst, clock), reason_said(worst)]
         if finding.state == "answered":
@@ -115,11 +125,7 @@ def details(finding: Finding, clock: Clock) -> list[str]:
 
 def leading_open(finding: Finding) -> Case | None:
     """Return the most urgent open case, None without one."""
-    return min(
-        open_cases(finding),
-        key=lambda c: (c.good_way, not c.ongoing, -abs(c.shift_sigma or 0), -c.fired_index, c.id),
-        default=None,
-    )
+    return next(iter(by_urgency(finding)), None)
 
 
 def leading_case(finding: Finding) -> Case | None:
@@ -132,6 +138,8 @@ def state_said(finding: Finding, clock: Clock) -> str:
     """Return a state for a row, with what makes it so: 'silent since Fri 15:02'."""
     if finding.state == "silent" and finding.silent_since is not None:
         return f"silent since {clock.short(finding.silent_since)}"
+    if finding.state in {"gathering", "not-computed"} and (why := why_no_limits(finding)):
+        return f"no limits: {why}"
     if finding.state == "gathering":
         return f"gathering, {gathered(finding)}"
     if finding.state == "signalling" and all(c.good_way for c in open_cases(finding)):
@@ -145,7 +153,7 @@ def latest_value(finding: Finding) -> str:
     if index is None:
         return ""
     panel = finding.panels[0]
-    return scale(finding, panel).value(float(panel.value[index]))
+    return f"{beyond(finding, index)}{scale(finding, panel).value(float(panel.value[index]))}"
 
 
 def answer_said(case: Case) -> str:
@@ -161,14 +169,31 @@ def _latest(finding: Finding, clock: Clock) -> str:
     written = scale(finding, panel)
     lower, upper = float(panel.lower[index]), float(panel.upper[index])
     when = point_short(finding.points, index, clock)
-    said = f"Its latest {statistic_said(panel)} is {written.value(float(panel.value[index]))} ({when})"
+    value = f"{beyond(finding, index)}{written.value(float(panel.value[index]))}"
+    said = f"Its latest {statistic_said(panel)} is {value} ({when})"
     if known(lower) and known(upper):
         return f"{said}; the limits there are {written.bare(lower)} and {written.value(upper)}."
     if known(upper):
         return f"{said}; the upper limit there is {written.value(upper)}."
     if known(lower):
         return f"{said}; the lower limit there is {written.value(lower)}."
-    return f"{said}; there are no limits yet."
+    return f"{said}; there are no limits{'' if why_no_limits(finding) else ' yet'}."
+
+
+def _passed(finding: Finding) -> bool:
+    """Whether cases of its history are still told, though none is open."""
+    return any(case.state != "withdrawn" for case in finding.cases)
+
+
+def _ended(finding: Finding) -> str:
+    """Return how many cases ended without an answer; '' for none."""
+    count = sum(case.state == "ended" for case in finding.cases)
+    return f"{spelled(count)} {'case' if count == 1 else 'cases'} ended without an answer" if count else ""
+
+
+def _open_signal(findings: Sequence[Finding]) -> str:
+    """Return 'signal', or 'open signal' where a history holds signals that are open no more."""
+    return "open signal" if any(_passed(f) for f in findings) else "signal"
 
 
 def _wanting(findings: Sequence[Finding]) -> int:
@@ -180,14 +205,19 @@ def _quiet(findings: Sequence[Finding]) -> bool:
     return not any(f.state in {"signalling", "answered"} for f in findings)
 
 
-def _without(counts: Mapping[State, int]) -> list[str]:
+def _without(findings: Sequence[Finding]) -> list[str]:
+    counts = Counter(f.state for f in findings)
+    never = sum(f.state == "gathering" and why_no_limits(f) != "" for f in findings)
     parts = []
     if n := counts["silent"]:
         parts.append(f"{_count(n)} {_verb(n, 'has', 'have')} sent no data lately")
     if n := counts["not-computed"]:
         parts.append(f"{_count(n)} cannot be computed")
-    if n := counts["gathering"]:
+    if n := counts["gathering"] - never:
         parts.append(f"{_count(n)} {_verb(n, 'is', 'are')} gathering points")
+    if never:
+        having = _verb(never, "has a baseline that allows", "have baselines that allow")
+        parts.append(f"{_count(never)} {having} no limits")
     return parts
 
 

@@ -3,12 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from holdsteady.charts.labels import READING_WORDS
-from holdsteady.monitor.finding import Case, Era, Finding, LimitsInForce, Panel
+from holdsteady.monitor.finding import TOO_FEW, Case, Era, Finding, LimitsInForce, Panel
 from holdsteady.project.logbook import LogbookEntry
 from holdsteady.project.settings import Specification
+from holdsteady.site import decimals
 from holdsteady.site.moments import Clock
 from holdsteady.site.sentences import case_label
 from holdsteady.site.words import scale, statistic_name
@@ -32,15 +33,15 @@ class SiteLabels:
     def era(self, finding: Finding, era: Era) -> str:
         """Return 'new die · limits since 3 May, adopted by A. R.'."""
         parts = [_cut(era.entry.text)] if era.entry is not None else []
-        rows = [row for row in finding.limits if row.era == era.number]
+        rows = [row for row in finding.limits if row.era == era.number and row.stop_index > row.start_index]
         if rows:
-            parts.append(self.limits(rows[-1]))
+            parts.append(self.limits(max(rows, key=lambda row: row.start_index)))
         return " · ".join(parts)
 
     def limits(self, row: LimitsInForce) -> str:
         """Return a set of limits in a few words: 'limits since 3 May, adopted by A. R.'."""
-        if row.lower is None and row.upper is None and not row.varies:
-            return "no limits yet"
+        if not row.limited:
+            return "no limits yet" if row.note == TOO_FEW else f"no limits: {row.note}"
         if row.kind == "provisional":
             return "provisional limits"
         since = "" if row.in_force_from is None else f" since {self.clock.day(row.in_force_from)}"
@@ -63,6 +64,8 @@ class SiteLabels:
     def wanted(self, finding: Finding, panel: Panel, specification: Specification) -> tuple[str, ...]:
         """Return what is wanted, for the margin; on a chart of means, that it is meant for single pieces."""
         written = scale(finding, panel)
+        if finding.settings.decimals is None:
+            written = replace(written, decimals=decimals.of_wanted(specification, written.decimals))
         lower, upper = (
             None if v is None else written.bare(v) for v in (specification.lower, specification.upper)
         )
@@ -83,7 +86,7 @@ class SiteLabels:
 
     def decimals(self, finding: Finding, panel: Panel) -> int | None:
         """Return the decimals values are read with; counts have none."""
-        return None if panel.statistic == "count" else finding.settings.decimals
+        return decimals.of_panel(finding, panel)
 
     @property
     def reading(self) -> Mapping[str, str]:

@@ -4,7 +4,8 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from holdsteady.monitor.finding import Finding, LimitsInForce, Panel
+from holdsteady.charts.picture import quoted
+from holdsteady.monitor.finding import TOO_FEW, Calculation, Finding, LimitsInForce, Panel
 from holdsteady.site.moments import Clock
 from holdsteady.site.numbers import Scale, counted, known, plain
 from holdsteady.site.words import LIMITS_KINDS, estimator_said, panel_named, scale, statistic_name
@@ -28,35 +29,47 @@ def current_limits(finding: Finding, clock: Clock) -> list[tuple[str, str]]:
     lines: list[tuple[str, str]] = []
     origins: list[list[tuple[str, str]]] = []
     for panel in finding.panels:
-        rows = [row for row in finding.limits if row.panel == panel.name]
-        if not rows:
+        row = next((row for row in finding.limits_now if row.panel == panel.name), None)
+        if row is None:
             continue
-        row = rows[-1]
-        lines.append(
-            (statistic_name(panel, finding.common_n), limits_said(row, panel, scale(finding, panel)))
-        )
+        said = limits_said(row, panel, scale(finding, panel))
+        lines.append((statistic_name(panel, finding.common_n), said))
         origins.append(_origin(finding, row, clock))
     for position, origin in enumerate(origins):
         if position == 0 or origin != origins[0]:
             lines += origin
+    for row in finding.limits_waiting:
+        panel = panel_named(finding, row.panel)
+        said = limits_said(row, panel, scale(finding, panel))
+        when = f", from {clock.full(row.in_force_from)} on" if row.in_force_from is not None else ""
+        lines.append(("To come", f"{statistic_name(panel, finding.common_n)} {said}{when}"))
     return lines
+
+
+def estimate_lead(finding: Finding, calculation: Calculation) -> str:
+    """Return what a calculation is where the limits in force do not come from it."""
+    kinds = {row.kind for row in finding.limits_now if row.limited}
+    kept = any("kept" in row.note for row in finding.limits_now)
+    if kept:
+        said = "The limits in force, or their sigma, are kept from the era before."
+    elif kinds and kinds <= {"adopted", "given"}:
+        said = f"The limits in force are {' and '.join(sorted(kinds))}."
+    else:
+        said = "There are no limits in force."
+    where = "this era" if len(finding.eras) > 1 else "this history"
+    return f"{said} An estimate made anew from {counted(calculation.points, 'point')} of {where} gives:"
 
 
 def limits_said(row: LimitsInForce, panel: Panel, written: Scale) -> str:
     """Return '11.989 – 12.000 – 12.011 mm', or what is missing and why."""
-    last = row.stop_index - 1
-    lower, centre, upper = (
-        (float(panel.lower[last]), float(panel.centre[last]), float(panel.upper[last]))
-        if row.varies
-        else tuple(float("nan") if v is None else v for v in (row.lower, row.centre, row.upper))
-    )
+    lower, centre, upper = quoted(row, panel)
     middle = "" if not known(centre) else written.bare(centre)
     if known(lower) and known(upper):
         said = written.with_unit(f"{written.bare(lower)} – {middle} – {written.bare(upper)}")
     elif known(upper):
-        said = f"centre {middle}, upper limit {written.value(upper)}; no lower limit"
+        said = f"centre {written.with_unit(middle)}, upper limit {written.value(upper)}; no lower limit"
     elif known(lower):
-        said = f"lower limit {written.value(lower)}, centre {middle}; no upper limit"
+        said = f"lower limit {written.value(lower)}, centre {written.with_unit(middle)}; no upper limit"
     else:
         said = (
             f"{'median' if row.estimator == 'median' else 'centre'} {written.with_unit(middle)}; no limits"
@@ -96,7 +109,7 @@ def _origin(finding: Finding, row: LimitsInForce, clock: Clock) -> list[tuple[st
         unit = Scale(statistic="value", unit=finding.settings.unit)
         by = f", from {estimator_said(row.estimator)}" if row.estimator and row.kind != "given" else ""
         lines.append(("Sigma", f"{unit.figure(row.sigma, unit=True)} of a single reading{by}"))
-    if row.estimator != "median":
+    if row.limited:
         lines.append(("In force since", _since(finding, row, clock)))
     return lines
 
@@ -106,8 +119,10 @@ def _kind_said(row: LimitsInForce, clock: Clock) -> str:
         by = f" by {row.by}" if row.by else ""
         when = f" on {clock.day(row.adopted_at)}" if row.adopted_at is not None else ""
         return f"adopted{by}{when}" + (f": {row.reason}" if row.reason else "")
-    if row.estimator == "median":
-        return "the median of the points so far; there are no limits yet"
+    if not row.limited:
+        if row.note == TOO_FEW:
+            return "the median of the points so far; there are no limits yet"
+        return "the baseline's centre; it allows no limits"
     if row.kind == "given":
         return "given in the settings, not estimated"
     return "provisional: nobody has adopted them"

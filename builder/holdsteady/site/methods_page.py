@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+from holdsteady.site.references import REFERENCES
 from holdsteady.site.words import (
     CASE_STATES,
     CASE_STATES_EXPLAINED,
@@ -49,11 +50,14 @@ class MethodsPage:
     states: tuple[tuple[str, str], ...]
     case_states: tuple[tuple[str, str], ...]
     flags: tuple[str, ...]
+    estimators: tuple[tuple[str, str, str], ...]  # name in the settings, formula, source
+    references: tuple[str, ...]
     chart_sources: str
+    licence: str
 
 
-def methods_page(chart_sources: str) -> MethodsPage:
-    """Gather the methods page; `chart_sources` is where the charts' specifications lie."""
+def methods_page(chart_sources: str, licence: str) -> MethodsPage:
+    """Gather the methods page; it links to the charts' specifications and to the licence of their scripts."""
     return MethodsPage(
         charts=tuple(_chart(id_, *method) for id_, method in _CHARTS.items()),
         rules=tuple(RuleMethod(id=id_, said=said, source=source) for id_, said, source in _RULES),
@@ -62,7 +66,8 @@ def methods_page(chart_sources: str) -> MethodsPage:
         ),
         states=tuple((STATES[state], STATES_EXPLAINED[state]) for state in STATE_ORDER),
         case_states=tuple((said, CASE_STATES_EXPLAINED[state]) for state, said in CASE_STATES.items()),
-        flags=tuple(f"{flag}." for flag in FLAGS.values()), chart_sources=chart_sources,
+        flags=tuple(f"{flag}." for flag in FLAGS.values()), estimators=_ESTIMATORS,
+        references=tuple(REFERENCES.values()), chart_sources=chart_sources, licence=licence,
     )  # fmt: skip
 
 
@@ -72,14 +77,18 @@ def _chart(
     return ChartMethod(id=id_, name=CHARTS[id_], plots=plots, formulas=formulas, notes=notes, source=source)
 
 
-_SHEWHART = "Shewhart 1931; ISO 7870-2:2013"
+_ISO = "ISO 7870-2:2013"
+_THREE_SIGMA = "the idea of three-sigma limits: Shewhart 1931"
+_RANGES = "d2, d3: Tippett 1925; unequal sizes: Burr 1969"
+_COUNTS = f"{_ISO}; {_THREE_SIGMA}"
+_SIGMA_Z = "sigma_z says how much more the points vary than their sizes alone explain (Laney 2002)."
 # chart -> (what it plots, formulas, notes, source)
 _CHARTS: dict[str, tuple[str, tuple[tuple[str, str], ...], tuple[str, ...], str]] = {
     "individuals": (
         "Single values, and the moving range between each and the one before.",
         (
             ("sigma", "mean moving range · √π / 2; as an option median moving range ÷ 0.9539"),
-            ("limits of the values", "mean ± 3 sigma"),
+            ("limits of the values", "mean ± width × sigma"),
             ("upper limit of moving ranges", "3 · √2 · sigma, which 0.27 % of ranges pass; or 3.686 sigma"),
         ),
         (
@@ -90,80 +99,123 @@ _CHARTS: dict[str, tuple[str, tuple[tuple[str, str], ...], tuple[str, ...], str]
             ),
             "Overall standard deviation ÷ sigma is shown: above 1 leans to drift, below 1 to alternation.",
         ),
-        _SHEWHART,
+        (
+            f"{_ISO}; moving ranges: Roes, Does & Schurink 1993; their median: Bryce, Gaudard & Joiner 1997; "
+            f"{_THREE_SIGMA}"
+        ),
     ),
     "mean-range": (
         "The mean and the range of each sample.",
         (
             ("sigma", "mean range ÷ d2(n)"),
-            ("limits of the mean", "grand mean ± 3 sigma / √n"),
-            ("limits of the range", "d2(n) sigma ± 3 d3(n) sigma; a lower limit not above zero is left out"),
+            ("limits of the mean", "grand mean ± width × sigma / √n"),
+            ("limits of the range", "d2(n) sigma ± width × d3(n) sigma; none below that is not above zero"),
         ),
         ("Where sample sizes differ, ranges are weighted by d2² / d3² (Burr 1969).",),
-        _SHEWHART,
+        f"{_ISO}; {_RANGES}; {_THREE_SIGMA}",
     ),
     "mean-sd": (
         "The mean and the standard deviation of each sample.",
         (
             ("sigma", "pooled standard deviation ÷ c4(ν + 1), with ν = Σ(n − 1)"),
-            ("limits of the mean", "mean weighted by n ± 3 sigma / √n, per sample"),
-            ("limits of the standard deviation", "c4(n) sigma ± 3 sigma √(1 − c4(n)²), per sample"),
+            ("limits of the mean", "mean weighted by n ± width × sigma / √n, per sample"),
+            ("limits of the standard deviation", "c4(n) sigma ± width × sigma √(1 − c4(n)²), per sample"),
         ),
         ("A sample of one is judged on its mean alone.",),
-        _SHEWHART,
+        (
+            f"{_ISO}; pooled over unequal sizes: Burr 1969; Mahmoud, Henderson, Epprecht & Woodall 2010; "
+            f"{_THREE_SIGMA}"
+        ),
     ),
     "median-range": (
         "The median and the range of each sample.",
         (
             ("sigma", "mean range ÷ d2(n)"),
-            ("limits of the median", "mean of medians ± 3 exact standard errors of a normal sample's median"),
+            (
+                "limits of the median",
+                "mean of medians ± width × sigma × exact standard deviation of the median of n",
+            ),
             ("limits of the range", "as for means and ranges"),
         ),
         (),
-        _SHEWHART,
+        f"{_ISO}; standard error of the median: David & Nagaraja 2003; {_RANGES}; {_THREE_SIGMA}",
     ),
     "p": (
         "The fraction of each sample that has the property counted.",
-        (("centre", "Σ count ÷ Σ size"), ("limits", "centre ± 3 √(centre (1 − centre) / size), per point")),
+        (
+            ("centre", "Σ count ÷ Σ size"),
+            ("limits", "centre ± width × √(centre (1 − centre) / size), per point"),
+        ),
         (
             "A lower limit not above 0, or an upper one not below 1, is left out: one point cannot show it.",
-            "sigma_z says how much more the points vary than their sizes alone explain.",
+            _SIGMA_Z,
         ),
-        _SHEWHART,
+        f"{_COUNTS}; sigma_z: Laney 2002",
     ),
     "np": (
         "The number with the property counted, in samples of one size.",
-        (("centre", "mean count"), ("limits", "n p ± 3 √(n p (1 − p))")),
+        (("centre", "mean count"), ("limits", "n p ± width × √(n p (1 − p))")),
         (),
-        _SHEWHART,
+        _COUNTS,
     ),
     "c": (
         "The count in an unchanging area of opportunity.",
-        (("centre", "mean count c"), ("limits", "c ± 3 √c")),
+        (("centre", "mean count c"), ("limits", "c ± width × √c")),
         ("Limits that are whole numbers are taken as exactly whole.",),
-        _SHEWHART,
+        _COUNTS,
     ),
     "u": (
         "The count for each unit inspected, the number of units differing from point to point.",
-        (("centre", "Σ count ÷ Σ size"), ("limits", "centre ± 3 √(centre / size), per point")),
-        ("sigma_z says how much more the points vary than their sizes alone explain.",),
-        _SHEWHART,
+        (("centre", "Σ count ÷ Σ size"), ("limits", "centre ± width × √(centre / size), per point")),
+        (_SIGMA_Z,),
+        f"{_COUNTS}; sigma_z: Laney 2002",
     ),
-}  # fmt: skip
+}
+_ESTIMATORS = (
+    (
+        "mean-range",
+        "mean of range ÷ d2(n), weighted by d2² / d3² where sizes differ",
+        "Tippett 1925; Burr 1969",
+    ),
+    ("mean-s", "plain mean of s ÷ c4(n)", _ISO),
+    (
+        "pooled",
+        "√(Σ(n − 1) s² / ν) ÷ c4(ν + 1), with ν = Σ(n − 1)",
+        "Burr 1969; Mahmoud, Henderson, Epprecht & Woodall 2010",
+    ),
+    ("weighted", "mean of s ÷ c4(n), weighted by c4² / (1 − c4²)", "Burr 1969"),
+    ("mean-moving-range", "mean moving range · √π / 2", "Roes, Does & Schurink 1993"),
+    ("median-moving-range", "median moving range ÷ 0.9539", "Bryce, Gaudard & Joiner 1997"),
+)
 _WESTERN = "Western Electric 1956"
-_NELSON = "Nelson, Journal of Quality Technology 1984"
+_NELSON = "Nelson 1984"
 _BOTH = f"{_WESTERN}; {_NELSON}"
+_UNEQUAL = "Not applied once sizes in an era have differed by more than 2 : 1."
+_ZONES = "Not applied to counts."
 _RULES = (
     ("outside-limits", "One point strictly outside the limits. A point on the limit is inside.", _BOTH),
-    ("two-of-three", "Two of three points beyond 2 sigma on the same side.", _BOTH),
-    ("four-of-five", "Four of five points beyond 1 sigma on the same side.", _BOTH),
+    ("two-of-three", f"Two of three points beyond 2 sigma on the same side. {_ZONES}", _BOTH),
+    ("four-of-five", f"Four of five points beyond 1 sigma on the same side. {_ZONES}", _BOTH),
     (
         "run-one-side",
-        "Nine points in a row on one side of the centre line; eight in the handbook. One on it breaks it.",
+        (
+            "Nine points in a row on one side of the centre line; eight in the handbook. One on it breaks "
+            "it. Counts lie above or below the median of their binomial or Poisson distribution instead; a "
+            "point of which fewer than 5 are expected (or, of a fraction, fewer than 5 of the others) breaks "
+            "the run."
+        ),
         _BOTH,
     ),
-    ("trend", "Six points in a row steadily rising or falling; a tie breaks it.", _NELSON),
-    ("alternating", "Fourteen points in a row going up and down in turn; a tie breaks it.", _NELSON),
-    ("hugging", "Fifteen points in a row within 1 sigma of the centre line.", _NELSON),
-    ("avoiding-centre", "Eight points in a row beyond 1 sigma, whether or not both sides appear.", _NELSON),
+    ("trend", f"Six points in a row steadily rising or falling; a tie breaks it. {_UNEQUAL}", _NELSON),
+    (
+        "alternating",
+        f"Fourteen points in a row going up and down in turn; a tie breaks it. {_UNEQUAL}",
+        _NELSON,
+    ),
+    ("hugging", f"Fifteen points in a row within 1 sigma of the centre line. {_ZONES}", _NELSON),
+    (
+        "avoiding-centre",
+        f"Eight points in a row beyond 1 sigma, whether or not both sides appear. {_ZONES}",
+        _NELSON,
+    ),
 )  # fmt: skip

@@ -44,6 +44,12 @@ class Clock:
         at = self._at(moment)
         return f"{_DAYS[at.weekday()][:3]} {at.day} {_MONTHS[at.month - 1][:3]} {at.year}, {_clock(at)}"
 
+    def to_the_second(self, moment: int) -> str:
+        """Return 'Tue 17 Mar 2026, 14:10:05', with a fraction where there is one."""
+        at = self._at(moment)
+        fraction = f".{at.microsecond:06d}".rstrip("0") if at.microsecond else ""
+        return f"{self.full(moment)}:{at.second:02d}{fraction}"
+
     def short(self, moment: int) -> str:
         """Return '14:05' on the data's last day, 'Fri 15:02' in its week, '3 Mar 15:02', '3 Mar 2025'."""
         at = self._at(moment)
@@ -76,18 +82,19 @@ class Clock:
         return f"at {said}" if ":" in said else f"on {said}"
 
     def span(self, start: int, stop: int, *, joined: str = "to") -> str:
-        """Return '07:00 to 09:00 on Monday', or both moments in full where the days differ."""
+        """Return '07:00 to 09:00 on Monday', both in full where days differ, one where they are alike."""
         first, last = self._at(start), self._at(stop)
+        if self.said(start) == self.said(stop):
+            return self.said(start)
         if first.date() != last.date():
             return f"{self.said(start)} {joined} {self.said(stop)}"
-        if ":" not in self.said(start) + self.said(stop):
-            return self.said(start)
         return f"{_clock(first)} {joined} {_clock(last)} on {self._day_said(first)}"
 
     def between(self, low: int, high: int, start: int) -> str:
         """Return '05:30 and 08:30', with the day where it is not that of `start`."""
         if len({self._at(moment).date() for moment in (low, high, start)}) == 1:
-            return f"{_clock(self._at(low))} and {_clock(self._at(high))}"
+            first, last = _clock(self._at(low)), _clock(self._at(high))
+            return first if first == last else f"{first} and {last}"
         return self.span(low, high, joined="and")
 
     def days(self, start: int, stop: int) -> str:

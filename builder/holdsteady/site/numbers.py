@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 _SIGNIFICANT = 4
 _WORDS = (
@@ -57,6 +57,14 @@ def plain(value: float, *, significant: int = _SIGNIFICANT) -> str:
     return grouped(f"{value:.{max(significant - 1 - magnitude, 0)}f}")
 
 
+def exact(value: float) -> str:
+    """Return a number with all the digits it was written with."""
+    digits = repr(value + 0.0)
+    if "e" in digits:
+        return digits.replace("-", "−")
+    return grouped(digits.removesuffix(".0"))
+
+
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Scale:
     """How the values of one statistic are written.
@@ -82,13 +90,19 @@ class Scale:
         return grouped(digits)
 
     def apart(self, value: float, limit: float) -> tuple[str, str]:
-        """Return both numbers with their unit, with as many more decimals as it takes to tell them apart."""
-        for more in range(5):
-            decimals = None if self.decimals is None else self.decimals + more
-            written = Scale(statistic=self.statistic, unit=self.unit, decimals=decimals)
-            texts = written.value(value), written.value(limit)
+        """Return both numbers with their unit, with as many more digits as it takes to tell them apart."""
+        texts = self.value(value), self.value(limit)
+        factor = 100 if self.statistic == "fraction" else 1
+        for more in range(1, 13):
             if texts[0] != texts[1]:
                 break
+            if self.decimals is None:
+                digits = _SIGNIFICANT + more
+                first, second = (plain(v * factor, significant=digits) for v in (value, limit))
+                texts = self.with_unit(first), self.with_unit(second)
+            else:
+                written = replace(self, decimals=self.decimals + more)
+                texts = written.value(value), written.value(limit)
         return texts
 
     def value(self, value: float) -> str:
@@ -113,15 +127,17 @@ class Scale:
     def figure(self, value: float, *, unit: bool) -> str:
         """Return a figure of a calculation: four significant digits, and a decimal more than a reading has.
 
-        Zeros at the end go, down to the decimals of a reading.
+        Zeros at the end go, down to the decimals of a reading. A fraction that bears a unit is in percent.
         """
+        if unit and self.statistic == "fraction":
+            return self.with_unit(_without_zeros(plain(100 * value), 0))
         text, fewest = plain(value), 0
-        if unit and self.decimals is not None and self.statistic != "fraction" and abs(value) < 1e9:
+        if unit and self.decimals is not None and abs(value) < 1e9:
             longer = f"{value:.{self.decimals + 1}f}"
             text = max(text, grouped(longer), key=len) if float(longer) else text
             fewest = self.decimals
         text = _without_zeros(text, fewest)
-        return f"{text} {self.unit}" if unit and self.unit and self.statistic != "fraction" else text
+        return f"{text} {self.unit}" if unit and self.unit else text
 
 
 def _without_zeros(text: str, fewest: int) -> str:

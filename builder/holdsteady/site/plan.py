@@ -85,7 +85,13 @@ def plan(
             "data.html", "data.html", "Data", data_page(findings, intake, view, clock), view, (), assets
         ),
         _planned(
-            "methods.html", "methods.html", "Methods", methods_page(assets.chart_sources), view, (), assets
+            "methods.html",
+            "methods.html",
+            "Methods",
+            methods_page(assets.chart_sources, assets.licence),
+            view,
+            (),
+            assets,
         ),
     ]
     ordered = [finding for _, members in by_attention(findings) for finding in members]

@@ -10,8 +10,8 @@ from holdsteady.arrays import Ints
 from holdsteady.monitor.finding import Finding, Panel
 from holdsteady.site.moments import Clock
 from holdsteady.site.numbers import known
-from holdsteady.site.sentences import point_short
-from holdsteady.site.words import RULES, SPREADS, scale, statistic_said
+from holdsteady.site.sentences import beyond, point_short
+from holdsteady.site.words import RULES, SPREADS, scale, statistic_name, statistic_said
 
 _MOST = 60  # rows; tables/points has all
 
@@ -37,8 +37,21 @@ def flagged_rows(finding: Finding, clock: Clock) -> tuple[tuple[PointRow, ...], 
     for panel in finding.panels:
         for met in panel.met.values():
             flagged = flagged | (met != 0)
+    # Where many are known only by a limit, they must not push the signals out of the table.
+    if np.count_nonzero(flagged | (points.side != 0)) <= _MOST:
+        flagged = flagged | (points.side != 0)
     indices: Ints = np.flatnonzero(flagged)[::-1]
     return tuple(_row(finding, int(i), clock) for i in indices[:_MOST]), max(len(indices) - _MOST, 0)
+
+
+def headings(finding: Finding) -> tuple[tuple[str, str], ...]:
+    """Return for each panel the headings of its values and of their limits, both with their unit."""
+    found = []
+    for panel in finding.panels:
+        unit = scale(finding, panel).with_unit("").strip()
+        of = f", {unit}" if unit else ""
+        found.append((f"{statistic_name(panel, finding.common_n)}{of}", f"Limits{of}"))
+    return tuple(found)
 
 
 def _row(finding: Finding, index: int, clock: Clock) -> PointRow:
@@ -56,6 +69,8 @@ def _row(finding: Finding, index: int, clock: Clock) -> PointRow:
         said.append("left out of the limits by the logbook")
     if points.open[index]:
         said.append("incomplete: not judged")
+    if points.side[index]:
+        said.append("known only by the limit it lies beyond")
     return PointRow(
         number=index + 1, when=point_short(points, index, clock), label=points.label[index],
         values=tuple(_value(finding, panel, index) for panel in finding.panels), said=tuple(said),
@@ -78,4 +93,5 @@ def _value(finding: Finding, panel: Panel, index: int) -> tuple[str, str]:
         between = f"up to {written.bare(upper)}"
     else:
         between = f"from {written.bare(lower)}" if known(lower) else "none"
-    return (written.bare(value) if known(value) else "none", between)
+    sign = beyond(finding, index) if panel.name != "spread" else ""
+    return (f"{sign}{written.bare(value)}" if known(value) else "none", between)

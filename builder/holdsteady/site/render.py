@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import dataclass, replace
 from functools import cache as remembered
 from pathlib import Path
 
@@ -11,8 +12,9 @@ from jinja2 import Environment, FileSystemLoader, StrictUndefined
 from holdsteady.charts.data import page_data
 from holdsteady.intake.readings import Intake
 from holdsteady.monitor.finding import Finding
+from holdsteady.monitor.monitor import not_computed
 from holdsteady.places import templates
-from holdsteady.site.assets import content_named, shared_assets
+from holdsteady.site.assets import Assets, content_named, shared_assets
 from holdsteady.site.characteristic_page import Chart
 from holdsteady.site.labels import SiteLabels
 from holdsteady.site.pictures import chart_picture, first_shown
@@ -20,10 +22,38 @@ from holdsteady.site.plan import PlannedPage, clock_of, plan
 from holdsteady.site.view import SiteView
 
 
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Drawn:
+    """A site without its `tables/`, and the findings as it shows them."""
+
+    files: dict[str, bytes]  # relative path with "/" to content
+    findings: tuple[Finding, ...]
+
+
 def render(
-    findings: Sequence[Finding], intake: Intake, project_view: SiteView, *, cache: Path | None
+    findings: Sequence[Finding],
+    intake: Intake,
+    project_view: SiteView,
+    *,
+    cache: Path | None,
+    keep: bool = True,
 ) -> dict[str, bytes]:
-    """Return the site, its `tables/` apart.
+    """Return the files of `draw`."""
+    return draw(findings, intake, project_view, cache=cache, keep=keep).files
+
+
+def draw(
+    findings: Sequence[Finding],
+    intake: Intake,
+    project_view: SiteView,
+    *,
+    cache: Path | None,
+    keep: bool = True,
+) -> Drawn:
+    """Return the site, its `tables/` apart; the same input gives the same bytes.
+
+    A characteristic whose pages cannot be drawn does not take the others down: it is shown as `not-computed`,
+    with what went wrong as its reason. The findings come back as they are shown, so that tables agree.
 
     Parameters
     ----------
@@ -35,13 +65,44 @@ def render(
         What the pages say of the project as a whole.
     cache : Path or None
         The project's own folder for what need not be made twice.
-
-    Returns
-    -------
-    dict of str to bytes
-        Relative path with "/" to content; the same input gives the same bytes.
+    keep : bool
+        Whether what had to be made may be kept there.
     """
-    assets = shared_assets(cache)
+    assets = shared_assets(cache, keep=keep)
+    shown = tuple(findings)
+    try:
+        return Drawn(files=_site(shown, intake, project_view, assets), findings=shown)
+    except Exception:
+        # Only now is each drawn alone, to find whose fault it is.
+        sound = tuple(_sound(finding, project_view, assets) for finding in shown)
+        if all(one is other for one, other in zip(sound, shown, strict=True)):
+            raise
+        return Drawn(files=_site(sound, intake, project_view, assets), findings=sound)
+
+
+def _sound(finding: Finding, project_view: SiteView, assets: Assets) -> Finding:
+    """Return the finding if a site of it alone can be drawn, else one that is not computed in its place."""
+    nothing = Intake(readings={}, files=(), set_aside=(), problems=(), censored={})
+    try:
+        _site((finding,), nothing, project_view, assets)
+    except Exception as error:
+        instead = not_computed(
+            finding.settings,
+            f"its page could not be drawn: {str(error) or type(error).__name__}",
+            "Check its settings against its data; if both are right, report this text.",
+            censored=finding.censored,
+        )
+        return replace(
+            instead, name=finding.name, slug=finding.slug, title=finding.title, chart=finding.chart,
+            readings=finding.readings, implausible=finding.implausible,
+        )  # fmt: skip
+    return finding
+
+
+def _site(
+    findings: Sequence[Finding], intake: Intake, project_view: SiteView, assets: Assets
+) -> dict[str, bytes]:
+    """Return every page and what it draws on."""
     site = dict(assets.files)
     labels = SiteLabels(clock=clock_of(project_view))
     charts: dict[str, Chart] = {}

@@ -7,13 +7,13 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from holdsteady.monitor.finding import Case, Finding, Panel, Points
+from holdsteady.monitor.finding import TOO_FEW, Case, Finding, Panel, Points
+from holdsteady.monitor.limits import FEWEST
 from holdsteady.project.logbook import LogbookEntry
 from holdsteady.site.moments import Clock
 from holdsteady.site.numbers import counted, opened, plain, spelled
 from holdsteady.site.words import SPREADS, panel_named, scale, statistic_said
 
-_LEAST_POINTS = 8  # below it an era has no limits
 # rule -> (while it lasts, once over): stories that are not a step have no likely start and no size
 _FORMS = {
     "trend-high": ("has risen steadily", "rose steadily"),
@@ -56,7 +56,9 @@ def shifted(finding: Finding, case: Case) -> bool:
     rule = _earliest_rule(finding, case)
     single = rule == "outside-limits" and case.first_index == case.last_index
     agrees = case.shift is not None and (case.shift > 0) == (case.direction == "high")
-    return not single and rule not in _FORMS and agrees
+    # A step that lies after the point at which the rule was met cannot be what met it.
+    explains = case.start_index is None or case.start_index <= case.fired_index
+    return not single and rule not in _FORMS and agrees and explains
 
 
 def case_label(finding: Finding, case: Case, clock: Clock) -> str:
@@ -71,8 +73,13 @@ def case_label(finding: Finding, case: Case, clock: Clock) -> str:
     return sentence.marked
 
 
-def case_details(finding: Finding, case: Case, clock: Clock) -> list[str]:
-    """Return what else is known of a case: when it may have begun, how large, which readings, what reason."""
+def case_details(
+    finding: Finding, case: Case, clock: Clock, *, specification: bool = True
+) -> list[str]:
+    """Return what else is known of a case: when it may have begun, how large, which way.
+
+    `specification` says whether its readings outside specification are told here.
+    """
     panel = panel_named(finding, case.panel)
     details = []
     if case.start_low_index is not None and case.start_high_index is not None and shifted(finding, case):
@@ -84,7 +91,7 @@ def case_details(finding: Finding, case: Case, clock: Clock) -> list[str]:
         details.append(
             f"That is {plain(abs(case.shift_sigma), significant=2)} sigma of the {statistic_said(panel)}."
         )
-    if outside := outside_said(case):
+    if specification and (outside := outside_said(case)):
         details.append(outside)
     if case.good_way:
         details.append("That is the good way.")
@@ -132,13 +139,14 @@ def point_short(points: Points | None, index: int, clock: Clock) -> str:
 
 def gathered(finding: Finding) -> str:
     """Return how far an era has come towards limits: '5 points; limits begin at 8'."""
-    if finding.points is None:
-        return ""
-    count = int((finding.points.era == finding.points.era[-1]).sum()) if finding.points.era.size else 0
-    wanted = finding.settings.baseline.points
-    if count < _LEAST_POINTS:
-        return f"{counted(count, 'point')}; limits begin at {_LEAST_POINTS}"
-    return f"{counted(count, 'point')}" if count >= wanted else f"{count} of {wanted} points"
+    row = next((row for row in finding.limits_now if not row.limited), None)
+    return f"{counted(0 if row is None else row.points or 0, 'point')}; limits begin at {FEWEST}"
+
+
+def why_no_limits(finding: Finding) -> str:
+    """Return what in a full baseline allows no limits: 'no variation in its baseline'; else ''."""
+    row = next((row for row in finding.limits_now if not row.limited), None)
+    return "" if row is None or row.note == TOO_FEW else row.note.replace("the baseline", "its baseline")
 
 
 def _form(finding: Finding, case: Case, rule: str, clock: Clock) -> Sentence:
@@ -146,22 +154,23 @@ def _form(finding: Finding, case: Case, rule: str, clock: Clock) -> Sentence:
     if case.ongoing:
         since = point_said(finding.points, case.first_index, clock)
         return Sentence(subject=finding.title, before=" ", marked=f"{lasting} since {since}")
-    span = _span(finding.points, case.first_index, case.last_index, clock)
-    return Sentence(subject=finding.title, before=" ", marked=f"{over} from {span}")
+    span = _over(finding.points, case.first_index, case.last_index, clock)
+    return Sentence(subject=finding.title, before=" ", marked=f"{over} {span}")
 
 
 def _shift(finding: Finding, case: Case, panel: Panel, clock: Clock) -> Sentence:
     spread = panel.statistic in SPREADS
     high = case.direction == "high"
-    about = "about " if case.start_index is not None else ""
-    start = case.first_index if case.start_index is None else case.start_index
+    likely = case.start_index is not None and case.start_index <= case.fired_index
+    about = "about " if likely else ""
+    start = case.start_index if case.start_index is not None and likely else case.first_index
     way = ("more" if high else "less") if spread else ("high" if high else "low")
     if case.ongoing:
         before = " has varied " if spread else " has run "
         marked = f"{way} since {about}{point_said(finding.points, start, clock)}"
     else:
         before = " varied " if spread else " ran "
-        marked = f"{way} from {about}{_span(finding.points, start, case.last_index, clock)}"
+        marked = f"{way} {_over(finding.points, start, case.last_index, clock, about=about)}"
     after = "."
     if case.shift is not None and shifted(finding, case):
         size = scale(finding, panel).difference(case.shift)
@@ -200,10 +209,16 @@ def _on(points: Points | None, index: int, clock: Clock) -> str:
     return clock.on(int(points.time[index]))
 
 
-def _span(points: Points | None, start: int, stop: int, clock: Clock) -> str:
+def _over(points: Points | None, start: int, stop: int, clock: Clock, *, about: str = "") -> str:
+    """Return 'from 07:00 to 09:00 on Monday'; 'at 07:00 on Monday' where both ends read alike."""
     if points is None or points.time is None:
-        return f"point {start + 1} to point {stop + 1}"
-    return clock.span(int(points.time[start]), int(points.time[stop]))
+        if start == stop:
+            return f"at {about}point {start + 1}"
+        return f"from {about}point {start + 1} to point {stop + 1}"
+    first, last = int(points.time[start]), int(points.time[stop])
+    if clock.said(first) == clock.said(last):
+        return clock.on(first)
+    return f"from {about}{clock.span(first, last)}"
 
 
 def _between(points: Points | None, low: int, high: int, start: int, clock: Clock) -> str:
@@ -227,3 +242,9 @@ def latest_index(finding: Finding) -> int | None:
 def open_cases(finding: Finding) -> Sequence[Case]:
     """Return the open cases, newest first."""
     return sorted((c for c in finding.cases if c.state == "open"), key=lambda c: (-c.fired_index, c.id))
+
+
+def beyond(finding: Finding, index: int) -> str:
+    """Return '<' before a point drawn at a limit that its reading lies below, '>' above, else ''."""
+    side = 0 if finding.points is None else int(finding.points.side[index])
+    return "" if side == 0 else "<\u202f" if side < 0 else ">\u202f"

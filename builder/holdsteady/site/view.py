@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from zoneinfo import ZoneInfo
 
+from holdsteady.monitor.arrivals import Arrivals
 from holdsteady.problems import Problem
 from holdsteady.project.logbook import LogbookEntry
 from holdsteady.project.settings import Site
@@ -22,6 +23,8 @@ class SiteView:
     problems: everything that was found wrong and did not stop the build.
     register_check: the newest `check` of the limits register, "" without one.
     unmatched: logbook lines that match no characteristic, gauge or case.
+    ahead: logbook lines entered after `as_of`, which have no effect yet, where the clock decides.
+    arrivals: members of `each` that are new or have gone, and what is late.
     """
 
     settings: Site
@@ -30,6 +33,8 @@ class SiteView:
     problems: tuple[Problem, ...] = ()
     register_check: str = ""
     unmatched: tuple[LogbookEntry, ...] = ()
+    ahead: tuple[LogbookEntry, ...] = ()
+    arrivals: Arrivals = field(default_factory=Arrivals)
 
     @property
     def zone(self) -> ZoneInfo:

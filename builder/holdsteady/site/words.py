@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 from holdsteady.monitor.finding import CaseState, Finding, Panel, Signal
-from holdsteady.site.numbers import Scale, spelled
+from holdsteady.site import decimals
+from holdsteady.site.numbers import Scale, listed, spelled
 from holdsteady.spc.rules import Rule
 
 CAUTION = (
@@ -30,7 +31,7 @@ STATES_EXPLAINED = {
     "signalling": "A case is open: ongoing, or ended so lately that it still asks for an answer.",
     "not-computed": "Its data or its settings allow no chart; the page says why and what to do.",
     "silent": "No reading for more than two of its cadences of calendar time.",
-    "gathering": "Too few points for limits.",
+    "gathering": "Too few points for limits, or a baseline that allows none: no variation, no events.",
     "answered": "There were cases lately, each with a recorded reason. It does not say that they are fixed.",
     "steady": "None of the above: no signal that asks for anyone.",
 }
@@ -62,6 +63,11 @@ FLAGS_SHORT = {
     "outside-specification": "a reading outside specification",
     "doubtful-limits": "limits doubtful",
     "doubtful-gauge": "gauge doubtful",
+}
+_DOUBTS_SHORT = {
+    "the level differs from the baseline's": "level",
+    "the spread differs from the baseline's": "spread",
+    "the autocorrelation differs from the baseline's": "autocorrelation",
 }
 LIMITS_KINDS = {"provisional": "provisional", "adopted": "adopted", "given": "given"}
 KINDS = {
@@ -153,8 +159,19 @@ def panel_named(finding: Finding, name: str) -> Panel:
 
 def scale(finding: Finding, panel: Panel) -> Scale:
     """Return how values of a panel are written."""
-    settings = finding.settings
-    return Scale(statistic=panel.statistic, unit=settings.unit, decimals=settings.decimals)
+    return Scale(
+        statistic=panel.statistic,
+        unit=finding.settings.unit,
+        decimals=decimals.of_panel(finding, panel),
+    )
+
+
+def flag_short(finding: Finding, flag: str) -> str:
+    """Return a flag for a row of the first page, '' for one that waits on the characteristic's own page."""
+    said = FLAGS_SHORT.get(flag, "")
+    if flag == "doubtful-limits" and finding.doubts:
+        return f"{said}: {listed([_DOUBTS_SHORT.get(doubt, doubt) for doubt in finding.doubts])}"
+    return said
 
 
 def flag_said(flag: str) -> str:
@@ -162,14 +179,19 @@ def flag_said(flag: str) -> str:
     return FLAGS.get(flag, flag.replace("-", " "))
 
 
-def rule_said(rule: Rule) -> str:
-    """Return a rule with its counts, as the chart's page lists it."""
+def _middle(panel: Panel) -> str:
+    """Return the line that sides are told from: of counts it is the median, for their centre is skewed."""
+    return "median" if panel.name == "single" else "centre line"
+
+
+def rule_said(rule: Rule, panel: Panel) -> str:
+    """Return a rule of a panel with its counts, as the chart's page lists it."""
     points = spelled(rule.points)
     return {
         "outside-limits": "one point outside the limits",
         "two-of-three": f"{points} of {spelled(rule.of)} points beyond 2 sigma on one side",
         "four-of-five": f"{points} of {spelled(rule.of)} points beyond 1 sigma on one side",
-        "run-one-side": f"{points} points in a row on one side of the centre line",
+        "run-one-side": f"{points} points in a row on one side of the {_middle(panel)}",
         "trend": f"{points} points in a row steadily rising or falling",
         "alternating": f"{points} points in a row going up and down in turn",
         "hugging": f"{points} points in a row within 1 sigma of the centre line",
@@ -193,7 +215,7 @@ def signal_said(finding: Finding, signal: Signal) -> str:
         "outside-limits": f"{one} {side} the {limit} limit",
         "two-of-three": f"{zone} points more than 2 sigma {side} the centre line{longer}",
         "four-of-five": f"{zone} points more than 1 sigma {side} the centre line{longer}",
-        "run-one-side": f"{row} {side} the centre line",
+        "run-one-side": f"{row} {side} the {_middle(panel)}",
         "trend": f"{row} steadily {way}",
         "alternating": f"{row} going up and down in turn",
         "hugging": f"{row} within 1 sigma of the centre line",

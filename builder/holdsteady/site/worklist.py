@@ -11,38 +11,52 @@ from holdsteady.site.sentences import open_cases
 from holdsteady.site.words import STATE_ORDER
 
 _CAUTIOUS = ("safety", "regulatory")
-_GROSS = 5.0  # sigma
 _ATTENTION = ("signalling", "not-computed")
 
 
 @dataclass(frozen=True, slots=True)
 class Work:
-    """One open case and the characteristic it belongs to."""
+    """A characteristic with an open case, the most urgent one, and its further open cases in that order."""
 
     finding: Finding
     case: Case
+    further: tuple[Case, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
 class Tier:
-    """Cases that stand together, and the words that say why."""
+    """Characteristics that stand together, and the words that say why."""
 
     title: str
     work: tuple[Work, ...]
 
 
 def tiers(findings: Sequence[Finding]) -> tuple[Tier, ...]:
-    """Sort every open case into tiers, the most urgent first; those of the good way come last, apart."""
+    """Sort what has an open case into tiers, the most urgent first; those of the good way come last, apart.
+
+    A characteristic stands once, where its most urgent case does.
+    """
     titles = {
         0: "First: ongoing, with safety, a regulation or the specification concerned",
         1: "Ongoing",
         2: "Over again, still without a reason",
         3: "The good way: worth keeping, if someone finds out why",
     }
-    everything = [Work(f, c) for f in findings for c in open_cases(f)]
+    everything = [Work(f, c[0], c[1:]) for f in findings if (c := by_urgency(f))]
     sorted_work = sorted(everything, key=_urgency)
     groups = {number: tuple(w for w in sorted_work if _tier(w) == number) for number in titles}
     return tuple(Tier(titles[number], work) for number, work in groups.items() if work)
+
+
+def by_urgency(finding: Finding) -> tuple[Case, ...]:
+    """Return a characteristic's open cases, the most urgent first."""
+
+    def key(case: Case) -> tuple[int, bool, float, int, str]:
+        size = abs(case.shift_sigma or 0)
+        tier = _tier(Work(finding, case))
+        return tier, not case.outside_specification, -size, -case.fired_index, case.id
+
+    return tuple(sorted(open_cases(finding), key=key))
 
 
 def why(work: Work) -> str:
@@ -61,7 +75,7 @@ def why(work: Work) -> str:
         said.append("No reading outside specification.")
     if count > 1:
         said.append(f"{spelled(count).capitalize()} signals.")
-    if case.state == "open" and _gross_in_baseline(work):
+    if case.state == "open" and case.gross and _in_baseline(work):
         said.append("Inside the baseline of its own limits, but gross.")
     return " ".join(said)
 
@@ -108,7 +122,7 @@ def _urgency(work: Work) -> tuple[bool, bool, float, str, str, str]:
     )  # fmt: skip
 
 
-def _gross_in_baseline(work: Work) -> bool:
+def _in_baseline(work: Work) -> bool:
     panel = next(p for p in work.finding.panels if p.name == work.case.panel)
     span = slice(work.case.first_index, work.case.last_index + 1)
-    return bool(panel.in_baseline[span].all()) and bool((abs(panel.z[span]) > _GROSS).any())
+    return bool(panel.in_baseline[span].all())
