@@ -46,7 +46,10 @@ class Ledger:
             if id(taken.selection) in self._whole:
                 return
             self._whole.add(id(taken.selection))
-        self.used[taken.rows] = True
+        if taken.usable is None and taken.selection.size == self.pool.size:
+            self.used[:] = True
+        else:
+            self.used[taken.rows] = True
         self.unreadable[taken.fault_rows] = True
         self.lacking[taken.lacking] = True
         columns = [taken.columns[place] for place in taken.fault_columns.tolist()]

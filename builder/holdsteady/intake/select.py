@@ -113,8 +113,9 @@ def _take_judged(ask: Ask, pool: Pool, chosen: Selection, served: Bools) -> Take
     usable = (state == State.NUMBER).any(axis=1) & (size_state == State.NUMBER)
     every = np.column_stack((state, size_state))
     fault_rows, fault_columns = np.nonzero(every > State.EMPTY)
+    rows = chosen.rows
     values = np.where(state == State.NUMBER, values, np.nan)[usable]
-    lacking, lacks = _lacking(ask, pool, chosen.rows, served)
+    lacking, lacks = _lacking(ask, pool, rows, served)
     return Taken(
         selection=chosen,
         usable=usable,
@@ -122,7 +123,7 @@ def _take_judged(ask: Ask, pool: Pool, chosen: Selection, served: Bools) -> Take
         side=None if side is None else _where_any(np.where(np.isnan(values), np.int8(0), side[usable])),
         size=None if size is None else size[usable],
         columns=ask.numbers,
-        fault_rows=chosen.rows[fault_rows],
+        fault_rows=rows[fault_rows],
         fault_columns=fault_columns,
         fault_states=every[fault_rows, fault_columns],
         lacking=lacking,
@@ -164,12 +165,12 @@ def _lacking(ask: Ask, pool: Pool, rows: Ints, served: Bools) -> tuple[Ints, Seq
 
 
 def _sizes(ask: Ask, pool: Pool, chosen: Selection) -> tuple[Floats | None, States]:
-    fine = np.full(chosen.rows.size, State.NUMBER, dtype=np.uint8)
+    fine = np.full(chosen.size, State.NUMBER, dtype=np.uint8)
     if ask.size is None:
         return None, fine
     if isinstance(ask.size, str):
         return pool.selected(ask.size, chosen), chosen.of(pool.states(ask.size))
-    return np.full(chosen.rows.size, float(ask.size)), fine
+    return np.full(chosen.size, float(ask.size)), fine
 
 
 def _plausible(one: Characteristic) -> tuple[float, float]:

@@ -26,17 +26,16 @@ Patch = tuple[slice, Ints]
 class Selection:
     """R rows of a pool for M members, one member after the other, each by time, file and line.
 
-    `rows`, `time`, `file` and `line` are (R,); those of member m run from `starts[m]` to `starts[m + 1]`,
-    (M + 1,). `each` gives every member's labels.
+    `time`, `file` and `line` are (R,); those of member m run from `starts[m]` to `starts[m + 1]`, (M + 1,).
+    `each` gives every member's labels.
 
     Cells are fetched in the order in which they lie, which is nearly always that of time, and then put
     right: `places` are those of the rows in that order, `patches` the parts whose order differs, and their
-    order. `whole` says that these are all rows of the pool. `steps` say, stretch by stretch of the pool,
-    which parts of `places` lie in it, counted from its first row, so that cells can be fetched without
-    leaving the cache; where there are none, cells are fetched from the whole column.
+    order. `whole` says that these are all rows of the pool as they lie. `steps` say, stretch by stretch of
+    the pool, which parts of `places` lie in it, counted from its first row, so that cells can be fetched
+    without leaving the cache; where there are none, cells are fetched from the whole column.
     """
 
-    rows: Ints
     starts: Ints
     each: Sequence[dict[str, str]]
     time: Ints | None
@@ -46,6 +45,20 @@ class Selection:
     patches: Sequence[Patch]
     whole: bool
     steps: Sequence[Step]
+
+    @property
+    def size(self) -> int:
+        """How many rows there are."""
+        return int(self.starts[-1])
+
+    @property
+    def rows(self) -> Ints:
+        """The places, (R,), of the rows in the pool."""
+        result = self.places.copy()
+        for stretch, parts in self.steps:
+            for begin, end in parts:
+                result[begin:end] += stretch.rows.start
+        return self._put_right(result)
 
     def of(self, column: npt.NDArray[Kind]) -> npt.NDArray[Kind]:
         """Return the selected cells, (R,), of a column of the pool, (N,)."""
@@ -88,36 +101,33 @@ class Selection:
 def select(rows: Ints, each: Sequence[dict[str, str]], groups: Groups | None, ground: Ground) -> Selection:
     """Order the rows, given ascending, by member, then time; `groups` are places among them."""
     starts = np.array([0, rows.size]) if groups is None else groups.starts
+    whole = groups is None and rows.size == ground.size
     if groups is not None:
         rows = groups.order if rows.size == ground.size else rows[groups.order]
     cuts = _cuts(rows, starts, ground.starts)
-    steps = () if cuts is None else _steps(cuts, rows.size, ground)
+    file, line = _where(rows, cuts, ground)
+    steps = () if whole or cuts is None else _steps(cuts, rows.size, ground)
     found = Selection(
-        rows=rows,
         starts=starts,
         each=each,
         time=None,
-        file=rows,
-        line=rows,
-        places=_within(rows, steps),
+        file=file,
+        line=line,
+        places=_within(rows if groups is not None else rows.copy(), steps),
         patches=(),
-        whole=groups is None and rows.size == ground.size,
+        whole=whole,
         steps=steps,
     )
     time = None if ground.times is None else found.of_pieces(ground.times)
     if time is None and ground.time is not None:
         time = found.of(ground.time)
-    file, line = _places(found, cuts, ground)
     patches = () if time is None else _patches(starts, time)
-    if patches:
-        rows = rows.copy()
     for part, order in patches:
-        for cells in (rows, time, file, line):
+        for cells in (time, file, line):
             if cells is not None:
                 cells[part] = cells[part][order]
     return replace(
         found,
-        rows=rows,
         time=None if time is None else frozen(time),
         file=frozen(file),
         line=frozen(line),
@@ -144,26 +154,23 @@ def _steps(cuts: Ints, count: int, ground: Ground) -> Sequence[Step]:
 
 
 def _within(rows: Ints, steps: Sequence[Step]) -> Ints:
-    """Return the places of the rows, each counted from the first row of its step."""
-    if not steps:
-        return rows
-    places = np.empty_like(rows)
+    """Count the rows, in place, each from the first row of its step."""
     for stretch, parts in steps:
         for begin, end in parts:
-            np.subtract(rows[begin:end], stretch.rows.start, out=places[begin:end])
-    return places
+            rows[begin:end] -= stretch.rows.start
+    return rows
 
 
-def _places(found: Selection, cuts: Ints | None, ground: Ground) -> tuple[Ints, Ints]:
+def _where(rows: Ints, cuts: Ints | None, ground: Ground) -> tuple[Ints, Ints]:
     """Return file and line of each row."""
     shifts = None if cuts is None else ground.shifts()
     if cuts is None or shifts is None:
-        return found.of(ground.file), found.of(ground.line)
+        return ground.file[rows], ground.line[rows]
     counts = np.diff(cuts, axis=1).reshape(-1)
     members = cuts.shape[0]
     file = np.repeat(np.tile(np.arange(shifts.size), members), counts)
     line = np.repeat(np.tile(shifts, members), counts)
-    line += found.rows
+    line += rows
     return file, line
 
 
