@@ -17,7 +17,7 @@ from holdsteady.build import build, check
 from holdsteady.monitor.finding import Finding
 from holdsteady.problems import PublishError, RefusedFolderError, SettingsError, SiteBusyError
 from holdsteady.publish import held
-from holdsteady.site import render
+from holdsteady.site import pictures, plan, render
 
 
 def table(site: Path, name: str) -> list[dict[str, str]]:
@@ -177,7 +177,7 @@ class TestTrouble:
         project = small_project(tmp_path / "p", shift=6)
         build(project)
         before = files_of(project / "site")
-        whole = render.chart_picture
+        whole = pictures.chart_picture
 
         def fail(finding: Finding, *given: Any) -> Any:
             if finding.name == "bore[press=2]":
@@ -200,7 +200,8 @@ class TestTrouble:
         states = {row["characteristic"]: row for row in table(project / "site", "characteristics")}
         assert states["bore[press=2]"]["state"] == "not-computed"
         assert states["bore[press=2]"]["slug"] == "bore-press-2"
-        assert not [row for row in table(project / "site", "cases") if row["characteristic"] == "bore[press=2]"]
+        cases = table(project / "site", "cases")
+        assert not [row for row in cases if row["characteristic"] == "bore[press=2]"]
         data = {path for path in before if path.startswith("assets/data/bore-press-1")}
         assert data <= set(after)
         assert check(project).exit_code() == 3
@@ -209,7 +210,7 @@ class TestTrouble:
         self, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
     ) -> None:
         project = small_project(tmp_path / "p")
-        whole = render.plan
+        whole = plan.plan
 
         def fail(findings: Sequence[Finding], *given: Any) -> Any:
             if len(findings) > 1:

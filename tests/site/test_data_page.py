@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import replace
+from pathlib import Path
 from typing import Any
 
 import pytest
@@ -11,6 +12,7 @@ from tests.made_findings import AS_OF, HOUR, finding
 from tests.site.made_site import HOSTILE, Reader, file_account, made_view
 from tests.small_project import CACHE
 
+from holdsteady.build import build
 from holdsteady.intake.readings import Example, ExampleCell, FileAccount, Intake, SetAside
 from holdsteady.monitor.arrivals import Arrivals, Lateness, Member
 from holdsteady.site.render import render
@@ -202,3 +204,20 @@ def test_what_became_of_the_other_rows_is_told() -> None:
         "1 was corrected by a newer row. Every row is accounted for."
     )
     assert "460 rows: 440 used, 12 filtered, 7 repeated, 1 corrected, 0 set aside." in reader.one("main").text
+
+
+def test_corrected_rows_are_listed_with_the_rows_that_count_instead(tmp_path: Path) -> None:
+    (tmp_path / "holdsteady.toml").write_text(
+        '[site]\nas_of = 2026-03-02T00:00:00\n'
+        '[[source]]\nid = "s"\nfiles = ["*.csv"]\ntime = "t"\nkey = ["t"]\n'
+        '[[characteristic]]\nid = "x"\nsource = "s"\nvalue = "v"\n'
+    )
+    (tmp_path / "a.csv").write_text("t,v\n2026-03-01 08:00,1.0\n2026-03-01 09:00,2.0\n")
+    (tmp_path / "b.csv").write_text("t,v\n2026-03-01 08:00,1.5\n2026-03-01 09:00,2.0\n")
+    build(tmp_path)
+    page = (tmp_path / "site/data.html").read_text(encoding="utf-8")
+    assert "1 row has the key of a newer row with other values" in page
+    assert page.index("a.csv:2</th>") < page.index("b.csv:2</td>")
+    files = (tmp_path / "site/tables/files.csv").read_text(encoding="utf-8").splitlines()
+    assert files[1].split(",")[3:9] == ["2", "1", "0", "0", "1", "0"]
+    assert files[2].split(",")[3:9] == ["2", "1", "0", "1", "0", "0"]

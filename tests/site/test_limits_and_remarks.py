@@ -49,8 +49,8 @@ def test_given_and_provisional_limits_say_so() -> None:
 @pytest.mark.parametrize(
     ("change", "said"),
     [
-        ({"lower": None}, "centre 12.000, upper limit 12.011 mm; no lower limit"),
-        ({"upper": None}, "lower limit 11.989 mm, centre 12.000; no upper limit"),
+        ({"lower": None}, "centre 12.000 mm, upper limit 12.011 mm; no lower limit"),
+        ({"upper": None}, "lower limit 11.989 mm, centre 12.000 mm; no upper limit"),
         (
             {"lower": None, "upper": None, "estimator": "median", "note": "too few points"},
             "median 12.000 mm; no limits (too few points)",

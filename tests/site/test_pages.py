@@ -229,7 +229,7 @@ def test_limits_their_origin_and_their_calculation_stand_on_the_page() -> None:
     text = page("characteristic/bore-press-2.html").one("main").text
     for said in (
         "Mean of 5 11.989 – 12.000 – 12.011 mm",
-        "Range of 5 centre 0.019, upper limit 0.040 mm; no lower limit",
+        "Range of 5 centre 0.019 mm, upper limit 0.040 mm; no lower limit",
         "Origin adopted by A. R. on 13 Mar: 25 quiet samples",
         "From 25 points, 10 Mar to 12 Mar; 1 left out by the logbook",
         "Sigma 0.00804 mm of a single reading, from the mean range",

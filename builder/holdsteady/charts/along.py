@@ -33,8 +33,9 @@ class Along:
         return self.moments is not None and not self.timed
 
     def at(self, moments: Ints) -> Floats:
-        """Return where moments of the plant's clock stand, (M,); in order, before the first point
-        that is not earlier.
+        """Return where moments of the plant's clock stand, (M,).
+
+        In order, that is before the first point that is not earlier.
 
         Raises
         ------

@@ -17,6 +17,7 @@ from holdsteady.site.source_lines import SourceFiles, sources
 from holdsteady.site.view import SiteView
 from holdsteady.site.words import KINDS
 
+_IN_SIGHT, _LISTED = 10, 200  # corrected rows
 _SEVERITIES = {Severity.ERROR: "error", Severity.WARNING: "warning", Severity.NOTE: "note"}
 
 
@@ -49,6 +50,9 @@ class DataPage:
     sources: tuple[SourceFiles, ...]
     reasons: tuple[Reason, ...]
     reasons_more: int
+    corrected: int
+    corrections: tuple[tuple[str, str], ...]  # the row that was corrected, and the one that counts instead
+    corrections_folded: tuple[tuple[str, str], ...]
     register_check: str
 
 
@@ -63,6 +67,7 @@ def data_page(findings: Sequence[Finding], intake: Intake, view: SiteView, clock
     )
     problems = dict.fromkeys((*view.problems, *intake.problems))
     by_reason, reasons_more = reasons(intake.set_aside)
+    corrections = [(f"{c.file}:{c.line}", f"{c.by_file}:{c.by_line}") for c in intake.corrections]
     return DataPage(
         sentence=f"{counted(rows, 'row')} in {counted(len(intake.files), 'file')}; {kept}.",
         detail=_detail(intake),
@@ -77,6 +82,9 @@ def data_page(findings: Sequence[Finding], intake: Intake, view: SiteView, clock
         sources=sources(intake.files, clock),
         reasons=by_reason,
         reasons_more=reasons_more,
+        corrected=sum(f.corrected for f in intake.files),
+        corrections=tuple(corrections[:_IN_SIGHT]),
+        corrections_folded=tuple(corrections[_IN_SIGHT:_LISTED]),
         register_check=view.register_check,
     )  # fmt: skip
 
