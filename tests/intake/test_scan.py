@@ -96,3 +96,9 @@ def test_a_file_that_cannot_be_read_is_one_line(tmp_path: Path, monkeypatch: pyt
 def test_a_site_in_the_project_folder_itself_hides_nothing(folder: Path) -> None:
     found = Scanner(folder, Settings.model_validate({"site": {"output": "."}})).files(("*.csv",))
     assert [one.name for one in found] == ["B.CSV", "a.csv"]
+
+
+def test_a_site_published_elsewhere_in_the_project_is_no_measurement(tmp_path: Path) -> None:
+    write(tmp_path, {"a.csv": "stamp,v\n", "old/.holdsteady-site.json": "{}", "old/tables/b.csv": "stamp,v\n"})
+    for globs in (("**/*.csv",), ("*.csv", "old/tables/*.csv")):
+        assert [one.name for one in Scanner(tmp_path, Settings()).files(globs)] == ["a.csv"]

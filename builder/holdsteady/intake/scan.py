@@ -11,6 +11,7 @@ from dataclasses import dataclass, field, replace
 from pathlib import Path
 
 from holdsteady.intake.readings import SetAside
+from holdsteady.manifest import NAME as PUBLISHED
 from holdsteady.project.settings import Settings
 
 ENDINGS = (".csv", ".tsv", ".txt")
@@ -33,7 +34,7 @@ class Found:
 class Scanner:
     """Walks a project folder for the globs of its sources, listing each folder once.
 
-    The published site and the project's own tables are no measurement files.
+    Published sites, wherever they lie, and the project's own tables are no measurement files.
     """
 
     folder: Path
@@ -127,7 +128,9 @@ class Scanner:
         except OSError:
             return False
         target = _real(Path(entry.path))
-        return target not in above and target != self._site and self._inside(target)
+        if target in above or target == self._site or not self._inside(target):
+            return False
+        return not (target / PUBLISHED).exists()
 
     def _pass_over(self, link: Path) -> None:
         """List a link to a folder that is not entered."""
