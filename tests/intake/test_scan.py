@@ -99,6 +99,7 @@ def test_a_site_in_the_project_folder_itself_hides_nothing(folder: Path) -> None
 
 
 def test_a_site_published_elsewhere_in_the_project_is_no_measurement(tmp_path: Path) -> None:
-    write(tmp_path, {"a.csv": "stamp,v\n", "old/.holdsteady-site.json": "{}", "old/tables/b.csv": "stamp,v\n"})
+    rows = "stamp,v\n"
+    write(tmp_path, {"a.csv": rows, "old/.holdsteady-site.json": "{}", "old/tables/b.csv": rows})
     for globs in (("**/*.csv",), ("*.csv", "old/tables/*.csv")):
         assert [one.name for one in Scanner(tmp_path, Settings()).files(globs)] == ["a.csv"]
