@@ -208,7 +208,7 @@ def test_what_became_of_the_other_rows_is_told() -> None:
 
 def test_corrected_rows_are_listed_with_the_rows_that_count_instead(tmp_path: Path) -> None:
     (tmp_path / "holdsteady.toml").write_text(
-        '[site]\nas_of = 2026-03-02T00:00:00\n'
+        "[site]\nas_of = 2026-03-02T00:00:00\n"
         '[[source]]\nid = "s"\nfiles = ["*.csv"]\ntime = "t"\nkey = ["t"]\n'
         '[[characteristic]]\nid = "x"\nsource = "s"\nvalue = "v"\n'
     )

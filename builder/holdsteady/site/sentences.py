@@ -73,9 +73,7 @@ def case_label(finding: Finding, case: Case, clock: Clock) -> str:
     return sentence.marked
 
 
-def case_details(
-    finding: Finding, case: Case, clock: Clock, *, specification: bool = True
-) -> list[str]:
+def case_details(finding: Finding, case: Case, clock: Clock, *, specification: bool = True) -> list[str]:
     """Return what else is known of a case: when it may have begun, how large, which way.
 
     `specification` says whether its readings outside specification are told here.
