@@ -10,7 +10,7 @@ import numpy as np
 import pytest
 from tests.browser.browser import Page
 from tests.browser.chart_page import write
-from tests.charts.varied_findings import hostile, long, two_eras, unequal, varied
+from tests.charts.varied_findings import dated, hostile, long, two_eras, unequal, varied
 from tests.made_findings import finding
 
 from holdsteady.charts import picture
@@ -281,4 +281,26 @@ def test_a_value_beyond_the_scale_points_outwards_and_is_read_as_it_is(
     said = page.evaluate("document.querySelector('.chart-note').textContent")
     assert "Value 4000.000 bar" in said
     assert "drawn at the edge" in said
+    assert_silent(page, tmp_path)
+
+
+def test_where_many_points_share_a_time_they_stand_in_order_and_still_tell_it(
+    page: Page, tmp_path: Path, kinds: KindsScript
+) -> None:
+    made = dated()
+    opened(page, tmp_path, made, kinds)
+    texts = page.evaluate("[...document.querySelectorAll('.chart-view text')].map((e) => e.textContent)")
+    assert "in order; many share a time" in texts
+    assert "100" in texts  # an order below the axis
+    places = page.evaluate(
+        "new Set([...document.querySelectorAll('g.mark-symbol[class*=location_points] path')]"
+        ".map((e) => Math.round(10 * e.getBoundingClientRect().left))).size"
+    )
+    assert places > 130
+    page.evaluate("document.querySelector('.chart-live').focus()")
+    page.press("Home")
+    said = page.evaluate("[...document.querySelector('.chart-note').children].map((e) => e.textContent)")
+    assert re.fullmatch(r"\w{3} \d+ Mar 2026, 14:10", said[0])
+    assert any(line.startswith("S0 · n = ") for line in said)
+    assert page.evaluate(CLASHES) == []
     assert_silent(page, tmp_path)

@@ -256,6 +256,14 @@ def wild() -> Finding:
     return replace(made, panels=(replace(made.panels[0], value=value), made.panels[1]))
 
 
+def dated() -> Finding:
+    """Dates without a clock: a dozen points and more share each, with a logbook line between two of them."""
+    made = two_eras()
+    assert made.points is not None
+    dates = AS_OF - (139 - np.arange(140, dtype=np.int64)) // 14 * 24 * HOUR
+    return replace(made, slug="dated", points=replace(made.points, time=dates))
+
+
 def varied() -> dict[str, Finding]:
     """Every one of them, by name."""
     return {
@@ -271,4 +279,5 @@ def varied() -> dict[str, Finding]:
         "hostile": hostile(),
         "wild": wild(),
         "crowded": crowded(),
+        "dated": dated(),
     }

@@ -14,6 +14,7 @@ from holdsteady.monitor.finding import Finding
 from holdsteady.project.settings import Specification
 from holdsteady.site.limits_lines import current_limits, limits_table
 from holdsteady.site.moments import Clock
+from holdsteady.site.point_rows import headings
 from holdsteady.site.remarks import legend, remarks, wanted
 from holdsteady.site.words import flag_short
 from holdsteady.site.worklist import Work, why
@@ -177,6 +178,24 @@ def test_what_was_seen_is_counted_and_nothing_is_predicted() -> None:
     some = replace(BORE, summaries=(replace(BORE.summaries[0], outside_observed=3),))
     assert dict(wanted(some, CLOCK))["Seen"] == "3 of 450 readings outside so far"
     assert wanted(replace(BORE, specification=()), CLOCK) == ()
+
+
+def test_a_chart_without_limits_promises_no_band() -> None:
+    few = finding("few", state="gathering", n=25)
+    assert "Band" not in legend(few)
+    assert legend(few).startswith("Line: the centre; there are no limits, so nothing can signal.")
+    assert legend(BORE).startswith("Band:")
+
+
+def test_fractions_have_one_scale_and_their_sign() -> None:
+    made = finding("rejects", chart="p", unit="")
+    panel = replace(made.panels[0], upper=np.full(90, np.nan))
+    made = replace(made, panels=(panel,), limits=(replace(made.limits[0], lower=0.0104, upper=None),))
+    said = dict(current_limits(made, CLOCK))["Fraction"]
+    assert said == "lower limit 1.040\u202f%, centre 2.200\u202f%; no upper limit"
+    assert headings(made) == (("Fraction, %", "Limits, %"),)
+    assert headings(BORE) == (("Mean of 5, mm", "Limits, mm"), ("Range of 5, mm", "Limits, mm"))
+    assert headings(finding("stops", chart="c", unit="")) == (("Count", "Limits"),)
 
 
 def test_the_legend_names_only_what_is_drawn() -> None:

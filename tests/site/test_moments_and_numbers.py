@@ -128,6 +128,10 @@ def test_figures_of_a_calculation_have_no_fewer_decimals_than_a_reading() -> Non
     assert bore.figure(0.0004, unit=True) == "0.0004 mm"
     assert bore.figure(2.32593, unit=False) == "2.326"
     assert Scale(statistic="value").figure(160.0, unit=False) == "160"
+    rejects = Scale(statistic="fraction")
+    assert rejects.figure(0.02087, unit=True) == "2.087\u202f%"
+    assert rejects.figure(0.875, unit=True) == "87.5\u202f%"
+    assert rejects.figure(6460.0, unit=False) == "6460"
 
 
 def test_what_rounds_alike_is_written_apart() -> None:

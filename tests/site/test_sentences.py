@@ -6,12 +6,15 @@ from dataclasses import replace
 from typing import Any
 from zoneinfo import ZoneInfo
 
+import numpy as np
 import pytest
 from tests.made_findings import AS_OF, HOUR, all_findings, finding
+from tests.site.made_site import Reader, made_site
 
+from holdsteady.charts.picture import likely_start
 from holdsteady.monitor.finding import Case, Direction, Finding, Signal
 from holdsteady.project.durations import Duration
-from holdsteady.site.case_lines import logbook_line
+from holdsteady.site.case_lines import case_row, logbook_line
 from holdsteady.site.headlines import details, first_details, first_sentence, headline, state_said
 from holdsteady.site.labels import SiteLabels
 from holdsteady.site.limits_lines import current_limits
@@ -125,6 +128,78 @@ def test_what_a_case_says(asked: dict[str, Any], sentence: str) -> None:
     made, case = with_case(BORE, **asked)
     assert case_sentence(made, case, CLOCK).text == sentence
     assert headline(made, CLOCK).text == sentence
+
+
+def test_a_start_after_the_point_that_fired_is_no_start() -> None:
+    made, case = with_case(BORE, ongoing=False, last=82, start_index=82, direction="low")
+    assert (
+        case_sentence(made, case, CLOCK).text
+        == "Bore diameter ran low from 04:10 on Monday to 00:10 on Tuesday."
+    )
+    assert case_row(made, case, CLOCK, root="").shift == ""
+    assert not any("sigma" in text or "began" in text for text in case_details(made, case, CLOCK))
+    assert likely_start(case) is None
+    made, case = with_case(BORE, start_index=80)
+    assert likely_start(case) == (70, 73)
+    assert "about" in case_sentence(made, case, CLOCK).text
+
+
+def test_ends_that_read_alike_are_told_once() -> None:
+    assert BORE.points is not None
+    minute = AS_OF + np.arange(90, dtype=np.int64) * 100_000
+    quick = replace(BORE, points=replace(BORE.points, time=minute))
+    made, case = with_case(quick, ongoing=False, direction="low", last=85)
+    assert case_sentence(made, case, CLOCK).text == (
+        "Bore diameter ran low at 14:10 on Tuesday, by 0.004 mm."
+    )
+    assert case_details(made, case, CLOCK)[0].startswith("That is")
+    made, case = with_case(quick, "trend", ongoing=False, last=85)
+    assert case_sentence(made, case, CLOCK).text == "Bore diameter rose steadily at 14:10 on Tuesday."
+    dated = replace(BORE, points=replace(BORE.points, time=minute - 200 * 24 * HOUR))
+    made, case = with_case(dated, ongoing=False, direction="low", last=85)
+    assert case_sentence(made, case, CLOCK).text.startswith("Bore diameter ran low on 29 August 2025, by")
+    untimed = finding("glaze", chart="u", title="Glaze specks", unit="", timed=False)
+    made, case = with_case(untimed, ongoing=False, first=80, fired=80, last=80, start_index=None, shift=None)
+    assert case_sentence(made, case, CLOCK).text == "Glaze specks ran high at point 81."
+
+
+def test_what_ended_unanswered_is_told_beside_no_open_signal() -> None:
+    made, case = with_case(BORE, ongoing=False)
+    past = replace(case, id="c-2", state="historical")
+    ended = replace(case, state="ended")
+    steady = replace(made, state="steady", cases=(ended, past))
+    assert headline(steady, CLOCK).text == (
+        "Bore diameter shows no open signal; one case ended without an answer."
+    )
+    two = replace(steady, cases=(ended, replace(ended, id="c-3")))
+    assert headline(two, CLOCK).text.endswith("; two cases ended without an answer.")
+    assert headline(replace(steady, cases=(past,)), CLOCK).text == "Bore diameter shows no open signal."
+    assert headline(replace(steady, cases=()), CLOCK).text == "Bore diameter shows no signal."
+    assert first_sentence([steady, BORE]).text == "No open signal among 2 characteristics."
+    assert first_sentence([BORE, BORE]).text == "No signal among 2 characteristics."
+    signalling = finding("x", state="signalling", shift=2.0)
+    assert first_details([steady, signalling]) == ["1 shows no open signal."]
+
+
+def test_what_cannot_signal_is_counted_as_not_computed() -> None:
+    made = finding("torque", title="Torque", n=100)
+    row = replace(
+        made.limits[0], kind="provisional", limited=False, lower=None, upper=None, sigma=None, points=25,
+        note="no variation in the baseline",
+    )  # fmt: skip
+    stuck = replace(
+        made, state="not-computed", limits=(row,), reason="no variation in the baseline",
+        remedy="Give `limits`, or a `baseline` that holds some variation.",
+    )  # fmt: skip
+    assert first_sentence([stuck, BORE]).text == ("No signal among 2 characteristics; 1 cannot be computed.")
+    page = Reader(made_site([stuck])["characteristic/torque.html"])
+    assert page.one("figure", class_="chart")
+    text = page.one("main").text
+    assert page.one("h1").text == "Torque has no limits: no variation in its baseline."
+    assert "Without limits it cannot signal. Give `limits`, or a `baseline`" in text
+    assert "centre 12.000 mm; no limits (no variation in the baseline)" in text
+    for wrong in ("provisional", "There is no lower limit", "gathering", "no signal"):
+        assert wrong not in text, wrong
 
 
 def test_one_point_is_told_with_its_value_and_its_limit() -> None:
