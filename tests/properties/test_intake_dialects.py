@@ -87,6 +87,15 @@ def written(table: list[Any], dialect: Mapping[str, Any], shape: Mapping[str, An
     return gzip.compress(data, mtime=0) if shape["packed"] else data
 
 
+def _is_also_utf_8(row: Any) -> bool:
+    """Whether cp1252 bytes of a row could as well be UTF-8: nothing can tell which was meant."""
+    data = repr(row).encode("cp1252", "ignore")
+    try:
+        return not data.decode("utf-8").isascii()
+    except UnicodeDecodeError:
+        return False
+
+
 def fits(table: list[Any], dialect: Mapping[str, Any], shape: Mapping[str, Any]) -> bool:
     """Whether the dialect can hold the table at all."""
     if dialect["lineterminator"] == "\r" and any("\n" in lot for _, lot, _ in table):
@@ -109,6 +118,7 @@ def test_any_dialect_reads_back_equal(
 ) -> None:
     table = [PROOF, *table]
     assume(fits(table, dialect, shape))
+    assume(shape["encoding"] != "cp1252" or not any(_is_also_utf_8(row) for row in table))
     time = ("date", "clock") if len(stamped(EPOCH, shape)) == 2 else "date"
     source = {"id": "s", "files": ("*",), "time": time}
     wanted = settings_of(
